@@ -1,0 +1,15 @@
+// Builds the package into dist/: compiled TypeScript beside the data tables it reads at run time.
+import { execFileSync } from 'node:child_process';
+import { chmodSync, cpSync, mkdirSync, readdirSync, rmSync } from 'node:fs';
+
+rmSync('dist', { recursive: true, force: true });
+execFileSync(process.execPath, ['node_modules/typescript/bin/tsc', '-p', 'tsconfig.build.json'], {
+  stdio: 'inherit',
+});
+mkdirSync('dist/materials/data', { recursive: true });
+for (const file of readdirSync('materials/data')) {
+  if (file.endsWith('.arrow') || file === 'README.md') {
+    cpSync(`materials/data/${file}`, `dist/materials/data/${file}`);
+  }
+}
+chmodSync('dist/cli/main.js', 0o755);

@@ -1,0 +1,86 @@
+/**
+ * What a run gives back: every figure with its standard error, every spectrum, the conservation check and how
+ * long it took. Everything is per source photon unless a unit says otherwise. Unknown is null, never 0.
+ */
+import type { Setup } from './setup.js';
+
+/** One figure; the columns of totals.arrow. */
+export interface QuantityRow {
+  readonly quantity: string;
+  /** Layer (or dose point) the figure belongs to; null for the whole stack. */
+  readonly layer: string | null;
+  /** Source line the figure belongs to; null for all lines together. */
+  readonly lineKeV: number | null;
+  readonly mean: number | null;
+  readonly stdError: number | null;
+  readonly unit: string;
+}
+
+export type SpectrumTally = 'transmitted' | 'reflected' | 'side_escape' | 'deposited' | 'pulse_height';
+
+export interface Spectrum {
+  readonly tally: SpectrumTally;
+  readonly layer: string | null;
+  readonly energyLowKeV: Float64Array;
+  readonly energyHighKeV: Float64Array;
+  readonly mean: Float64Array;
+  readonly stdError: Float64Array;
+}
+
+/** One warning of the closed vocabulary in warnings.ts, with how often it occurred. */
+export interface Warning {
+  readonly code: string;
+  readonly message: string;
+  readonly count: number;
+}
+
+/** Energy and photon book-keeping of the whole run (sums over histories, source weight included). */
+export interface Balance {
+  readonly energyInKeV: number;
+  readonly energyDepositedKeV: number;
+  readonly energyOutKeV: number;
+  /** |in − deposited − out| / in; a run fails above 1e-9. */
+  readonly relativeError: number;
+}
+
+export interface Timings {
+  /** From the call to the result. */
+  readonly wallS: number;
+  /** Sum over workers of the time inside batches. */
+  readonly workerS: number;
+  /** Histories over the time inside workers from first to last history, all workers together. */
+  readonly historiesPerSecond: number;
+}
+
+export type StopReason = 'histories' | 'until' | 'time_limit' | 'interrupted';
+
+export interface RunResult {
+  readonly setup: Setup;
+  readonly histories: number;
+  readonly batches: number;
+  readonly totals: readonly QuantityRow[];
+  readonly spectra: readonly Spectrum[];
+  readonly balance: Balance;
+  readonly warnings: readonly Warning[];
+  readonly timings: Timings;
+  readonly stopped: StopReason;
+}
+
+/** State of a run in progress, at a batch boundary. */
+export interface Progress {
+  readonly histories: number;
+  readonly historiesPlanned: number;
+  readonly elapsedS: number;
+  /** Expected remaining time; null while unknown. */
+  readonly remainingS: number | null;
+  /** The figure `until` watches, or the leading figure of the setup. */
+  readonly figure: QuantityRow | null;
+}
+
+export interface SimulateOptions {
+  /** Worker threads; default: the cores of the machine. */
+  readonly threads?: number;
+  readonly onProgress?: (progress: Progress) => void;
+  /** Aborting finishes the batches in hand and returns what there is (`stopped: 'interrupted'`). */
+  readonly signal?: AbortSignal;
+}

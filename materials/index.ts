@@ -1,0 +1,2 @@
+/** The door of the materials folder. */
+export type { Constituent, Material } from './material.js';
