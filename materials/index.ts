@@ -1,2 +1,15 @@
 /** The door of the materials folder. */
 export type { Constituent, Material } from './material.js';
+export { MaterialError, type MaterialErrorCode } from './errors.js';
+export {
+  absorptionEdges,
+  coefficientArrays,
+  elementCoefficients,
+  fillCoefficients,
+  materialCoefficients,
+  type AbsorptionEdge,
+  type CoefficientArrays,
+  type Coefficients,
+  type Composition,
+  type EdgeSide,
+} from './cross-sections.js';

@@ -1,0 +1,109 @@
+// Builds ../photon-cross-sections.arrow from the XCOM tables of the Debian package python-fisx-common.
+// Usage: node materials/data/build/photon-cross-sections.mjs [folder of the fisx tables]
+import { join } from 'node:path';
+import { Float64, Uint8, Utf8 } from 'apache-arrow';
+import { writeArrowFile } from './arrow-file.mjs';
+import { readSpecFile } from './specfile.mjs';
+
+const MAX_Z = 100;
+// The range in use ends at 20 MeV; a few rows above it keep the end of the splines away from it.
+const LAST_ENERGY_KEV = 30_000;
+const MIN_EDGE_KEV = 1;
+// Most XCOM edges are Larkins' binding energies to all digits. They differ by 3 % at M5 of rhenium and by up
+// to 8 % in the N shells of the transuranium elements, where a shell is still the only one nearby.
+const EDGE_MATCH_TOLERANCE = 0.08;
+
+const folder = process.argv[2] ?? '/usr/share/fisx';
+const elements = readSpecFile(join(folder, 'XCOM_CrossSections.dat'));
+const [bindings] = readSpecFile(join(folder, 'BindingEnergies.dat'));
+
+/** Name of the shell of element z whose edge is the one of the given rank, counted down from the K edge (0). */
+function shellOfRank(z, rank, energyKeV) {
+  const row = bindings.rows.find((values) => values[0] === z);
+  const difference = Math.abs(row[rank + 1] / energyKeV - 1);
+  if (!(difference < EDGE_MATCH_TOLERANCE)) {
+    throw new Error(`Z=${z}: edge at ${energyKeV} keV is not that of ${bindings.labels[rank + 1]}`);
+  }
+  return bindings.labels[rank + 1];
+}
+
+/** Rows of one element without repeats; an edge stays as two rows, the upper one with the shell's name. */
+function rowsOf({ number: z, labels, rows }) {
+  const column = (word) => labels.findIndex((label) => label.startsWith(word));
+  const [energy, coherent, incoherent, photoelectric, pair, total] = [
+    'PhotonEnergy',
+    'Rayleigh',
+    'Compton',
+    'Photoelectric',
+    'PairProduction',
+    'TotalCrossSection',
+  ].map(column);
+  const kept = [];
+  for (const row of rows) {
+    if (row[energy] > LAST_ENERGY_KEV) break;
+    const last = kept.at(-1);
+    if (last && row[energy] < last.energy)
+      throw new Error(`Z=${z}: energies not ascending at ${row[energy]}`);
+    const sameEnergy = last !== undefined && last.energy === row[energy];
+    if (sameEnergy && last.photoelectric === row[photoelectric]) continue;
+    const isEdge = sameEnergy && row[energy] >= MIN_EDGE_KEV;
+    if (isEdge && row[photoelectric] < last.photoelectric) throw new Error(`Z=${z}: downward edge`);
+    const sum = row[photoelectric] + row[incoherent] + row[coherent] + row[pair];
+    if (Math.abs(sum / row[total] - 1) > 2e-4)
+      throw new Error(`Z=${z}: parts do not add up at ${row[energy]} keV`);
+    kept.push({
+      z,
+      energy: row[energy],
+      photoelectric: row[photoelectric],
+      incoherent: row[incoherent],
+      coherent: row[coherent],
+      pair: row[pair],
+      isEdge,
+      shell: null,
+    });
+  }
+  const edges = kept.filter(({ isEdge }) => isEdge).reverse();
+  edges.forEach((edge, rank) => (edge.shell = shellOfRank(z, rank, edge.energy)));
+  return kept;
+}
+
+const rows = elements.filter(({ number }) => number <= MAX_Z).flatMap(rowsOf);
+const numbers = (name, unit, description, pick) => ({
+  name,
+  type: new Float64(),
+  unit,
+  description,
+  values: rows.map(pick),
+});
+
+writeArrowFile(
+  new URL('../photon-cross-sections.arrow', import.meta.url),
+  [
+    { name: 'z', type: new Uint8(), unit: '1', description: 'atomic number', values: rows.map(({ z }) => z) },
+    numbers(
+      'energy_keV',
+      'keV',
+      'photon energy; an absorption edge is two rows of one energy',
+      (r) => r.energy,
+    ),
+    numbers('photoelectric', 'cm2/g', 'photoelectric mass attenuation coefficient', (r) => r.photoelectric),
+    numbers('incoherent', 'cm2/g', 'incoherent (Compton) mass attenuation coefficient', (r) => r.incoherent),
+    numbers('coherent', 'cm2/g', 'coherent (Rayleigh) mass attenuation coefficient', (r) => r.coherent),
+    numbers('pair', 'cm2/g', 'pair production in the nuclear and the electron field together', (r) => r.pair),
+    {
+      name: 'edge_shell',
+      type: new Utf8(),
+      unit: '',
+      description: 'shell whose edge lies between the row before and this row; null where there is no edge',
+      values: rows.map(({ shell }) => shell),
+      nullable: true,
+    },
+  ],
+  {
+    source:
+      'XCOM: M. J. Berger and J. H. Hubbell, Photon Cross Sections on a Personal Computer, NBSIR 87-3597 (1987), ' +
+      'as tabulated in the fisx data package; shells by the binding energies of F. P. Larkins, ' +
+      'Atomic Data and Nuclear Data Tables 20 (1977) 311',
+  },
+);
+console.log(`photon-cross-sections.arrow: ${rows.length} rows`);
