@@ -6,7 +6,7 @@
  * element becomes one table of polynomials over intervals that never span an edge, so that "above" and
  * "below" an edge is only a choice between two neighbouring intervals.
  */
-import { straightLines, naturalSpline } from './cubic-spline.js';
+import { naturalSpline, polynomialAt, straightLines, type PiecewiseCubic } from './cubic-spline.js';
 import { dataTable, numberColumn, textColumn } from './data-table.js';
 import { MaterialError } from './errors.js';
 import type { Constituent } from './material.js';
@@ -51,6 +51,9 @@ const MAX_Z = 100;
 const RANGE_SLACK = 1e-9;
 /** Twice the electron's rest energy, 510.998 95 keV (CODATA 2018): the threshold of pair production. */
 const PAIR_THRESHOLD_KEV = 2 * 510.99895;
+
+/** Relative distance below which an edge and its neighbour in the table do not both carry a scattering spline. */
+const CROWDED = 0.003;
 
 /** Polynomials per interval: 16 numbers, 4 each for photoelectric, incoherent, coherent, reduced pair. */
 const STRIDE = 16;
@@ -249,65 +252,72 @@ function rowsOfElement(z: number): ElementRows {
 
 function buildTable(rows: ElementRows): ElementTable {
   const { energyKeV: energies, shell } = rows;
-  // Rows that open an interval: all but the lower one of each edge.
+  // Rows that open an interval: all but the lower one of each edge, and those below the range in use, which
+  // serve only as neighbours of the splines.
   const nodes = [...energies.keys()].filter((i) => energies[i + 1] !== energies[i]);
-  const energyKeV = Float64Array.from(nodes, (i) => energies[i]);
+  const energyKeV = Float64Array.from(nodes, (i) => energies[i]).filter((energy) => energy >= MIN_ENERGY_KEV);
   const logEnergy = energyKeV.map(Math.log);
-  const polynomials = new Float64Array(nodes.length * STRIDE);
-  const smooth = (values: Float64Array, offset: number) => {
-    const logs = Float64Array.from(nodes, (i) => Math.log(values[i]));
-    naturalSpline(logEnergy, logs, polynomials, offset, STRIDE);
+  const polynomials = new Float64Array(energyKeV.length * STRIDE);
+  const place = (curve: PiecewiseCubic, from: number, to: number, offset: number) => {
+    for (let i = from; i < to; i++) polynomialAt(curve, logEnergy[i], polynomials, i * STRIDE + offset);
   };
-  smooth(rows.incoherent, INCOHERENT);
-  smooth(rows.coherent, COHERENT);
-  fillPhotoelectric(rows, energyKeV, polynomials);
-  fillPair(rows, energyKeV, polynomials);
+
+  const smoothNodes = nodes.filter((i) => !isCrowdedEdge(rows, i));
+  place(splineThrough(energies, rows.incoherent, smoothNodes), 0, energyKeV.length, INCOHERENT);
+  place(splineThrough(energies, rows.coherent, smoothNodes), 0, energyKeV.length, COHERENT);
+  place(reducedPair(rows), 0, energyKeV.length, PAIR);
+  for (const curve of photoelectricPieces(rows)) {
+    const from = logEnergy.indexOf(curve.x[0]);
+    place(curve, from, from + curve.x.length - 1, PHOTOELECTRIC);
+  }
+
   const edges = [...energies.keys()]
     .filter((i) => shell[i] !== null)
     .map((i) => ({ shell: shell[i]!, energyKeV: energies[i] }));
-  // The rows below the range in use have served as neighbours of the splines and are not needed any more.
-  const start = energyKeV.findIndex((energy) => energy >= MIN_ENERGY_KEV);
-  return {
-    energyKeV: energyKeV.slice(start),
-    logEnergy: logEnergy.slice(start),
-    polynomials: polynomials.slice(start * STRIDE),
-    edges,
-  };
-}
-
-/** Pieces from edge to edge: straight lines below the K edge, a spline above it. */
-function fillPhotoelectric(rows: ElementRows, nodes: Float64Array, polynomials: Float64Array): void {
-  const { energyKeV, photoelectric, shell } = rows;
-  const kEdge = shell.indexOf('K');
-  // Edges below 1 keV are not in the table, so that nothing holds across them; the range in use starts there.
-  const start = energyKeV.findIndex((energy) => energy >= MIN_ENERGY_KEV);
-  const starts = [start, ...[...shell.keys()].filter((i) => shell[i] !== null), energyKeV.length];
-  for (let piece = 0; piece < starts.length - 1; piece++) {
-    const [from, to] = [starts[piece], starts[piece + 1]];
-    const logEnergy = energyKeV.slice(from, to).map(Math.log);
-    const logs = photoelectric.slice(from, to).map(Math.log);
-    const offset = nodes.indexOf(energyKeV[from]) * STRIDE + PHOTOELECTRIC;
-    const interpolate = from >= kEdge ? naturalSpline : straightLines;
-    interpolate(logEnergy, logs, polynomials, offset, STRIDE);
-  }
+  return { energyKeV, logEnergy, polynomials, edges };
 }
 
 /**
- * Spline of the pair coefficient with its threshold factor divided out. The first tabulated value lies at
- * 1.25 MeV; from there down to the threshold the end of the spline goes on as a straight line.
+ * Whether row i is an edge so near to a grid energy that the rounding of the tabulated values, seen over the
+ * short distance, would make a scattering spline swing (francium at 2.9999 and 3 keV, by 7 %).
  */
-function fillPair(rows: ElementRows, nodes: Float64Array, polynomials: Float64Array): void {
-  const filled = [...rows.energyKeV.keys()].filter((i) => rows.pair[i] > 0);
-  const energies = Float64Array.from(filled, (i) => rows.energyKeV[i]);
-  const logEnergy = energies.map(Math.log);
-  const logs = Float64Array.from(filled, (i) =>
-    Math.log(rows.pair[i] / pairThresholdFactor(rows.energyKeV[i])),
+function isCrowdedEdge({ energyKeV, shell }: ElementRows, i: number): boolean {
+  if (shell[i] === null) return false;
+  const [before, here, after] = [energyKeV[i - 2], energyKeV[i], energyKeV[i + 1]];
+  return here < before * (1 + CROWDED) || after < here * (1 + CROWDED);
+}
+
+function splineThrough(
+  energyKeV: Float64Array,
+  values: Float64Array,
+  rows: readonly number[],
+): PiecewiseCubic {
+  const x = Float64Array.from(rows, (i) => Math.log(energyKeV[i]));
+  return naturalSpline(
+    x,
+    Float64Array.from(rows, (i) => Math.log(values[i])),
   );
-  const first = nodes.indexOf(energies[0]);
-  naturalSpline(logEnergy, logs, polynomials, first * STRIDE + PAIR, STRIDE);
-  const slope = polynomials[first * STRIDE + PAIR + 1];
-  for (let interval = 0; interval < first; interval++) {
-    polynomials[interval * STRIDE + PAIR] = logs[0] + slope * (Math.log(nodes[interval]) - logEnergy[0]);
-    polynomials[interval * STRIDE + PAIR + 1] = slope;
-  }
+}
+
+/** The photoelectric curve from edge to edge: straight lines below the K edge, a spline above it. */
+function photoelectricPieces({ energyKeV, photoelectric, shell }: ElementRows): PiecewiseCubic[] {
+  // Edges below 1 keV are not in the table, so that nothing holds across them; the range in use starts there.
+  const first = energyKeV.findIndex((energy) => energy >= MIN_ENERGY_KEV);
+  const kEdge = shell.indexOf('K');
+  const starts = [first, ...[...shell.keys()].filter((i) => shell[i] !== null)];
+  return starts.map((from, piece) => {
+    const logEnergy = energyKeV.slice(from, starts[piece + 1]).map(Math.log);
+    const logs = photoelectric.slice(from, starts[piece + 1]).map(Math.log);
+    return from >= kEdge ? naturalSpline(logEnergy, logs) : straightLines(logEnergy, logs);
+  });
+}
+
+/**
+ * The pair coefficient with its threshold factor divided out. The first tabulated value lies at 1.25 MeV; from
+ * there down to the threshold the end of the spline goes on as a straight line.
+ */
+function reducedPair({ energyKeV, pair }: ElementRows): PiecewiseCubic {
+  const filled = [...pair.keys()].filter((i) => pair[i] > 0);
+  const reduced = pair.map((value, i) => value / pairThresholdFactor(energyKeV[i]));
+  return splineThrough(energyKeV, reduced, filled);
 }
