@@ -13,3 +13,12 @@ export {
   type Composition,
   type EdgeSide,
 } from './cross-sections.js';
+export {
+  HC_KEV_ANGSTROM,
+  formFactor,
+  formFactorAt,
+  incoherentFunction,
+  incoherentFunctionAt,
+  type FormFactor,
+  type IncoherentFunction,
+} from './scattering-factors.js';
