@@ -16,7 +16,8 @@ export const EXIT_CODES = {
   files: 4,
   run: 5,
   incomplete: 6,
-  interrupted: 130,
+  interrupted: 7,
+  killed: 130,
 } as const;
 
 export type ExitName = keyof typeof EXIT_CODES;
@@ -31,12 +32,14 @@ export const EXIT_MEANINGS: Readonly<Record<ExitName, string>> = {
   run: 'the run failed',
   incomplete: 'finished, but part of the answer is missing or fails its check',
   interrupted: 'stopped by Ctrl-C; what was finished is written',
+  killed: 'stopped at once by a second Ctrl-C; nothing is written',
 };
 
 /** Errors outside setup files, each with the exit code it leads to. */
 const EXIT_OF = {
   usage: 'usage',
   output_exists: 'files',
+  output_foreign: 'files',
   output_not_writable: 'files',
   disk_full: 'files',
   result_missing: 'files',
@@ -82,6 +85,8 @@ export const errors = {
       `${directory}: exists already`,
       'choose another folder with --out or replace it with --overwrite',
     ),
+  outputForeign: (path: string, what: string) =>
+    new ThicksetError('output_foreign', `${path}: ${what}`, 'choose another folder with --out'),
   outputNotWritable: (path: string, cause: unknown) =>
     new ThicksetError(
       'output_not_writable',
