@@ -22,3 +22,4 @@ export {
   type FormFactor,
   type IncoherentFunction,
 } from './scattering-factors.js';
+export { comptonProfiles, type ComptonProfiles, type ShellProfile } from './compton-profiles.js';
