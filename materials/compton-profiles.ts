@@ -3,9 +3,7 @@
  * the Doppler broadening of the scattered energy in the impulse approximation.
  */
 import { dataTable } from './data-table.js';
-import { MaterialError } from './errors.js';
-
-const MAX_Z = 100;
+import { elementOf } from './elements.js';
 
 export interface ShellProfile {
   /** K, L1, … Q1. */
@@ -42,13 +40,7 @@ export function comptonProfiles(z: number): ComptonProfiles {
 }
 
 function readProfiles(z: number): ComptonProfiles {
-  if (!Number.isInteger(z) || z < 1 || z > MAX_Z) {
-    throw new MaterialError({
-      code: 'element_out_of_range',
-      value: String(z),
-      rule: `atomic number must be a whole number from 1 to ${MAX_Z}`,
-    });
-  }
+  elementOf(z); // refuses any other z
   const table = dataTable('compton-profiles');
   momenta ??= Float64Array.from(JSON.parse(table.schema.metadata.get('momentum_atomic_units')!) as number[]);
   const numbers = table.getChild('z')!.toArray() as Uint8Array;

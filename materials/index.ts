@@ -23,3 +23,25 @@ export {
   type IncoherentFunction,
 } from './scattering-factors.js';
 export { comptonProfiles, type ComptonProfiles, type ShellProfile } from './compton-profiles.js';
+export { materialFromFormula } from './compound.js';
+export { elementBySymbol, elementOf, elements, findElement, type Element } from './elements.js';
+export { parseFormula, type AtomCounts } from './formula.js';
+export {
+  findMaterial,
+  materialFromMassFractions,
+  namedMaterials,
+  nearestMaterialName,
+  resolveMaterial,
+  type NamedMaterial,
+} from './named-materials.js';
+export { nearest } from './nearest.js';
+export {
+  fluorescenceYield,
+  relaxation,
+  type InnerShell,
+  type Relaxation,
+  type ShellIndex,
+  type ShellRelaxation,
+  type Transition,
+} from './relaxation.js';
+export { SUBSHELL_COUNT, subshellShares } from './subshell-shares.js';

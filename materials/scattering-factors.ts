@@ -6,7 +6,7 @@
  * Z − F ∝ x² and S ∝ x²; beyond the last node F keeps its power law and S stays.
  */
 import { dataTable } from './data-table.js';
-import { MaterialError } from './errors.js';
+import { elementOf } from './elements.js';
 
 /** Planck's constant times the speed of light in keV·Å (CODATA 2018); x = E sin(θ/2) / it. */
 export const HC_KEV_ANGSTROM = 12.398419843320026;
@@ -91,13 +91,7 @@ function scatteringFactors(z: number): ScatteringFactors {
 }
 
 function readFactors(z: number): ScatteringFactors {
-  if (!Number.isInteger(z) || z < 1 || z > MAX_Z) {
-    throw new MaterialError({
-      code: 'element_out_of_range',
-      value: String(z),
-      rule: `atomic number must be a whole number from 1 to ${MAX_Z}`,
-    });
-  }
+  elementOf(z); // refuses any other z
   const table = dataTable('scattering-factors');
   const rowsPerElement = table.numRows / MAX_Z;
   const column = (name: string) =>
