@@ -5,10 +5,10 @@ export type MaterialErrorCode =
   | 'unknown_element'
   | 'unknown_material'
   | 'bad_density'
+  | 'no_density'
   | 'bad_mass_fraction'
   | 'mass_fractions_sum'
   | 'bad_name'
-  | 'no_constituents'
   | 'energy_out_of_range'
   | 'element_out_of_range';
 
