@@ -93,6 +93,14 @@ describe('form factors and incoherent functions', () => {
     expect(Math.abs(incoherent / Number(row.incoherent_cm2_per_g) - 1)).toBeLessThan(0.015);
   });
 
+  it.each(
+    publishedRows('modified-form-factors').map(
+      (row) => [Number(row.z), Number(row.x_per_angstrom), row] as const,
+    ),
+  )('of Z = %i at x = %f lie within 5 %% of the modified relativistic form factor', (z, x, row) => {
+    expect(Math.abs(formFactorAt(z, x) / Number(row.form_factor) - 1)).toBeLessThan(0.05);
+  });
+
   it('fall steadily from x = 2.5 to 5 and from 7 to 10, where the packaged table holds straight lines', () => {
     // A straight line between two nodes showed as a slope 0.5 too small, then 0.5 too large, in ln F against ln x.
     for (const z of [9, 13, 26, 53, 82]) {

@@ -29,10 +29,10 @@ function formFactor(element) {
   return x.map((at, i) => (at <= SPLINE_START ? element.formFactor[i] : Math.exp(inLogs(Math.log(at)))));
 }
 
-/** S as tabulated, but never falling and never above Z: the packaged spline overshoots by up to 2e-4 near Z. */
-function incoherentFunction(element) {
+/** Never falling and never above Z, as S is: the packaged spline overshoots by up to 2e-4 near Z. */
+function risingTo(z, values) {
   let largest = 0;
-  return element.incoherent.map((value) => (largest = Math.max(largest, Math.min(value, element.z))));
+  return values.map((value) => (largest = Math.max(largest, Math.min(value, z))));
 }
 
 /** The curve of the heaviest tabulated element scaled as a Thomas-Fermi atom, a function of x / Z^(1/3) times Z. */
@@ -41,18 +41,18 @@ function scaled(curve, z, first) {
   const ratio = z / MAX_TABULATED_Z;
   return x.map((at) => {
     const from = Math.log(at / Math.cbrt(ratio));
-    return from < Math.log(x[0]) ? first(ratio, at) : Math.min(z, ratio * Math.exp(inLogs(from)));
+    return from < Math.log(x[0]) ? first(ratio, at) : ratio * Math.exp(inLogs(from));
   });
 }
 
 const tabulated = dump.elements
   .filter(({ z }) => z <= MAX_TABULATED_Z)
-  .map((element) => ({ z: element.z, f: formFactor(element), s: incoherentFunction(element) }));
+  .map((element) => ({ z: element.z, f: formFactor(element), s: risingTo(element.z, element.incoherent) }));
 const heaviest = tabulated.at(-1);
 for (let z = MAX_TABULATED_Z + 1; z <= MAX_Z; z++) {
   const f = scaled(heaviest.f, z, (ratio) => ratio * heaviest.f[0]);
   const s = scaled(heaviest.s, z, (ratio) => ratio * heaviest.s[0] * ratio ** (-2 / 3));
-  tabulated.push({ z, f, s });
+  tabulated.push({ z, f, s: risingTo(z, s) });
 }
 
 const rows = tabulated.flatMap(({ z, f, s }) => [
