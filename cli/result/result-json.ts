@@ -1,0 +1,35 @@
+/** A result as the one object that `--json` prints; the rows of `totals` have the columns of totals.arrow. */
+import type { QuantityRow } from '../../engine/result.js';
+import { flawOf, watchedRow } from '../text/convergence.js';
+import { relativeError } from '../text/figure-format.js';
+import type { Manifest } from './manifest.js';
+import type { StoredResult } from './stored-result.js';
+
+/** What belongs to the files rather than to the result. */
+const LEFT_OUT: ReadonlySet<string> = new Set(['format', 'setup', 'files'] satisfies (keyof Manifest)[]);
+
+function totalsRow({ quantity, layer, lineKeV, mean, stdError, unit }: QuantityRow): Record<string, unknown> {
+  return { quantity, layer, line_keV: lineKeV, mean, std_error: stdError, unit };
+}
+
+/** The object for a result; `out` is its folder, null when nothing could be written. */
+export function resultObject(
+  { manifest, totals }: StoredResult,
+  out: string | null,
+): Record<string, unknown> {
+  const watched = manifest.run.until && watchedRow(totals, manifest.run.until);
+  const flawed = totals.flatMap((row) => {
+    const flaw = flawOf(row, manifest, watched);
+    const { quantity, layer, lineKeV } = row;
+    const error = relativeError(row.mean, row.stdError);
+    return flaw === null ? [] : [{ quantity, layer, line_keV: lineKeV, relative_error: error, reason: flaw }];
+  });
+  const facts = Object.fromEntries(Object.entries(manifest).filter(([key]) => !LEFT_OUT.has(key)));
+  return {
+    out,
+    ...facts,
+    setup_sha256: manifest.setup?.sha256 ?? null,
+    totals: totals.map(totalsRow),
+    not_converged: flawed,
+  };
+}

@@ -1,0 +1,74 @@
+/** The one line on stderr that tells a person how far a run is; rewritten in place, a few times per second at most. */
+import type { Progress } from '../../engine/result.js';
+import { clip } from '../show.js';
+import { truncate } from './display-width.js';
+import {
+  formatCount,
+  formatDuration,
+  formatFigure,
+  formatNumber,
+  formatPercent,
+  relativeError,
+} from './figure-format.js';
+
+const SHORTEST_INTERVAL_MS = 200;
+/** To the line's start, and erase to its end (ECMA-48). */
+const REWRITE = '\r\x1b[K';
+
+export interface ProgressLine {
+  readonly update: (progress: Progress) => void;
+  /** Removes the line, so that what follows starts on a clean one. */
+  readonly clear: () => void;
+}
+
+/** What the line says. */
+export function progressText(progress: Progress, plusMinus: string): string {
+  const { histories, historiesPlanned, figure, remainingS } = progress;
+  const parts = [
+    `${formatCount(histories)} of ${formatCount(historiesPlanned)} histories ` +
+      `(${Math.floor((100 * histories) / historiesPlanned)} %)`,
+  ];
+  if (figure !== null && figure.mean !== null) {
+    const { value, error } = formatFigure(figure.mean, figure.stdError);
+    const relative = relativeError(figure.mean, figure.stdError);
+    const where = figure.layer === null ? '' : ` ${clip(figure.layer, 20)}`;
+    const line = figure.lineKeV === null ? '' : ` ${formatNumber(figure.lineKeV, 6)} keV`;
+    parts.push(
+      `${figure.quantity}${where}${line} ${value}` +
+        (error === '' ? '' : ` ${plusMinus} ${error}`) +
+        (relative === null ? '' : ` (${formatPercent(relative)})`),
+    );
+  }
+  if (remainingS !== null) {
+    parts.push(`${formatDuration(Math.ceil(remainingS))} left`);
+  }
+  return parts.join(', ');
+}
+
+/** A line written through `write` and kept to `width` cells. */
+export function makeProgressLine(
+  write: (text: string) => void,
+  width: number,
+  plusMinus: string,
+  now: () => number = () => performance.now(),
+): ProgressLine {
+  let shownAt = -Infinity;
+  let shown = false;
+  return {
+    update: (progress) => {
+      if (now() - shownAt < SHORTEST_INTERVAL_MS) {
+        return;
+      }
+      shownAt = now();
+      shown = true;
+      // One cell is left free: a full line would wrap and could not be rewritten.
+      write(REWRITE + truncate(progressText(progress, plusMinus), width - 1));
+    },
+    clear: () => {
+      if (shown) {
+        write(REWRITE);
+        shown = false;
+      }
+    },
+  };
+}

@@ -1,0 +1,50 @@
+/** What the summary needs to know of each quantity: where it belongs and whether it scales with the source. */
+
+/** Groups of the summary, in their order. */
+export const GROUPS = {
+  in: 'What went in',
+  out: 'What came out',
+  layers: 'What each layer got',
+  detectors: 'Detectors',
+  dose: 'Dose',
+  other: 'Other figures',
+} as const;
+
+export type Group = keyof typeof GROUPS;
+
+interface QuantityTraits {
+  readonly group: Group;
+  /** Grows with the number of source photons; ratios and doses per fluence do not. */
+  readonly extensive: boolean;
+}
+
+const QUANTITIES: Readonly<Record<string, QuantityTraits>> = {
+  incident: { group: 'in', extensive: true },
+  transmitted: { group: 'out', extensive: true },
+  transmitted_energy: { group: 'out', extensive: true },
+  uncollided: { group: 'out', extensive: true },
+  reflected: { group: 'out', extensive: true },
+  reflected_energy: { group: 'out', extensive: true },
+  side_escape: { group: 'out', extensive: true },
+  side_escape_energy: { group: 'out', extensive: true },
+  deposited_energy: { group: 'layers', extensive: true },
+  interacting: { group: 'layers', extensive: true },
+  full_energy: { group: 'detectors', extensive: true },
+  peak_to_total: { group: 'detectors', extensive: false },
+  air_kerma: { group: 'dose', extensive: true },
+  ambient_dose: { group: 'dose', extensive: true },
+  effective_dose_ap: { group: 'dose', extensive: true },
+  dose_transmission: { group: 'dose', extensive: false },
+  buildup: { group: 'dose', extensive: false },
+};
+
+/** The group of a figure; the interactions of a detector layer stand beside its peaks. */
+export function groupOf(quantity: string, inDetector: boolean): Group {
+  const group = QUANTITIES[quantity]?.group ?? 'other';
+  return group === 'layers' && inDetector && quantity === 'interacting' ? 'detectors' : group;
+}
+
+/** True where a figure per photon times photons per second is a rate. */
+export function isExtensive(quantity: string, unit: string): boolean {
+  return (QUANTITIES[quantity]?.extensive ?? false) && !/cm/.test(unit);
+}

@@ -1,0 +1,139 @@
+/** A finished run on one screen: what went in, the figures with their errors, the spectra, what to be careful of. */
+import type { Spectrum, SpectrumTally, StopReason } from '../../engine/result.js';
+import type { Manifest } from '../result/manifest.js';
+import type { StoredResult } from '../result/stored-result.js';
+import { clip } from '../show.js';
+import { CONVERGED_BELOW, type Flaw } from './convergence.js';
+import { displayWidth } from './display-width.js';
+import { figuresText, flawsIn, MARKS } from './figures-text.js';
+import { formatCount, formatDuration, formatNumber, formatPercent } from './figure-format.js';
+import { GROUPS, type Group } from './quantities.js';
+import { describeSetup } from './setup-text.js';
+import { plotSpectrum } from './spectrum-plot.js';
+import type { Style } from './style.js';
+import { wrap } from './text-table.js';
+
+/** Which spectra are drawn: those of photons that leave and of detectors, every one, or none. */
+export type SpectraChoice = 'main' | 'all' | 'none';
+
+const CAUTION =
+  'These figures come from an idealised slab model. They support design; they replace no measurement, no local ' +
+  'code and no qualified expert.';
+
+const STOPPED: Readonly<Record<StopReason, string>> = {
+  histories: 'all planned histories done',
+  until: 'stopped at the precision asked for',
+  time_limit: 'stopped by the time limit',
+  interrupted: 'interrupted',
+};
+
+const SPECTRUM_TITLES: Readonly<Record<SpectrumTally, string>> = {
+  transmitted: 'Transmitted photons',
+  reflected: 'Reflected photons',
+  side_escape: 'Photons through the sides',
+  deposited: 'Energy deposited',
+  pulse_height: 'Pulse heights',
+};
+
+function head({ title, histories, seed, stopped, timings }: Manifest, style: Style): string[] {
+  const rate = formatCount(timings.histories_per_second);
+  return [
+    ...wrap(clip(title, 200), style.width).map(style.heading),
+    ...wrap(
+      `${formatCount(histories)} histories in ${formatDuration(timings.wall_s)} (${rate} per second), ` +
+        `${STOPPED[stopped]}, seed ${clip(seed)}`,
+      style.width,
+    ),
+  ];
+}
+
+/** The titles of the columns stand beside the heading where there is room, else under it. */
+function headed(heading: string, header: string, style: Style): string[] {
+  const room = ' '.repeat(displayWidth(heading) + 1);
+  return header.startsWith(room)
+    ? [`${style.heading(heading)}${style.note(header.slice(displayWidth(heading)))}`]
+    : [style.heading(heading), style.note(header)];
+}
+
+function figureSections(result: StoredResult, style: Style): string[] {
+  const [main, ...others] = figuresText(result, style);
+  const lines = ['', style.heading(GROUPS.in), ...describeSetup(result.manifest)];
+  for (const group of Object.keys(GROUPS) as Group[]) {
+    const own = main.byGroup.get(group) ?? [];
+    if (own.length > 0) {
+      lines.push(
+        ...(group === 'in' ? [style.note(main.header)] : ['', ...headed(GROUPS[group], main.header, style)]),
+      );
+      lines.push(...own);
+    }
+  }
+  for (const { header, byGroup } of others) {
+    lines.push('', ...headed('With this source', header, style), ...[...byGroup.values()].flat());
+  }
+  return lines;
+}
+
+function legend(result: StoredResult, style: Style): string[] {
+  const flaws = flawsIn(result);
+  const until = result.manifest.run.until;
+  const texts: Readonly<Record<Flaw, string | null>> = {
+    none_seen: null,
+    imprecise: `not converged: standard error above ${formatNumber(100 * CONVERGED_BELOW)} % of the value, or nothing seen; more histories help`,
+    short_of_until:
+      until &&
+      `${STOPPED[result.manifest.stopped]} before ${clip(until.quantity)} reached ${formatPercent(until.relative_error)}`,
+  };
+  const shown = new Set<Flaw>([...flaws].map((flaw) => (flaw === 'none_seen' ? 'imprecise' : flaw)));
+  const lines = [...shown].flatMap((flaw) => wrap(`${MARKS[flaw]} ${texts[flaw]}`, style.width));
+  return lines.length === 0 ? [] : ['', ...lines.map(style.alert)];
+}
+
+function spectrumLines(spectrum: Spectrum, style: Style): string[] {
+  const { lines, logarithmic } = plotSpectrum(spectrum, style);
+  const where = spectrum.layer === null ? '' : `, ${clip(spectrum.layer)}`;
+  const name = `${SPECTRUM_TITLES[spectrum.tally] ?? clip(spectrum.tally)}${where}`;
+  if (lines.length === 0) {
+    return ['', `${style.heading(name)} ${style.note('(none)')}`];
+  }
+  const what = spectrum.tally === 'deposited' ? 'keV per keV and photon' : 'per keV and photon';
+  const caption = style.note(`(${what}${logarithmic ? ', logarithmic' : ''})`);
+  return ['', `${style.heading(name)} ${caption}`, ...lines.map(style.drawing)];
+}
+
+function spectraSections(spectra: readonly Spectrum[], choice: SpectraChoice, style: Style): string[] {
+  const drawn = spectra.filter(
+    ({ tally, mean }) =>
+      choice === 'all' || (choice === 'main' && tally !== 'deposited' && mean.some((value) => value > 0)),
+  );
+  return drawn.flatMap((spectrum) => spectrumLines(spectrum, style));
+}
+
+function warningLines({ warnings }: Manifest, style: Style): string[] {
+  if (warnings.length === 0) {
+    return [];
+  }
+  const texts = warnings.map(
+    ({ message, count }) => clip(message, 300) + (count > 1 ? ` (${formatCount(count)} times)` : ''),
+  );
+  return [
+    '',
+    style.heading('Warnings'),
+    ...texts.flatMap((text) => wrap(text, style.width - 2).map((line) => `  ${line}`)),
+  ];
+}
+
+/** The lines of the summary, none wider than the style's width save for long names. */
+export function summaryLines(result: StoredResult, style: Style, spectra: SpectraChoice): string[] {
+  const { manifest } = result;
+  const energyGap = formatNumber(manifest.balance.relative_error, 2);
+  return [
+    ...head(manifest, style),
+    ...figureSections(result, style),
+    ...legend(result, style),
+    ...spectraSections(result.spectra, spectra, style),
+    ...warningLines(manifest, style),
+    '',
+    ...wrap(`Energy in and energy accounted for differ by ${energyGap} of the whole.`, style.width),
+    ...wrap(CAUTION, style.width).map(style.note),
+  ];
+}
