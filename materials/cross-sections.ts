@@ -252,10 +252,9 @@ function rowsOfElement(z: number): ElementRows {
 
 function buildTable(rows: ElementRows): ElementTable {
   const { energyKeV: energies, shell } = rows;
-  // Rows that open an interval: all but the lower one of each edge, and those below the range in use, which
-  // serve only as neighbours of the splines.
+  // Rows that open an interval: all but the lower one of each edge.
   const nodes = [...energies.keys()].filter((i) => energies[i + 1] !== energies[i]);
-  const energyKeV = Float64Array.from(nodes, (i) => energies[i]).filter((energy) => energy >= MIN_ENERGY_KEV);
+  const energyKeV = Float64Array.from(nodes, (i) => energies[i]);
   const logEnergy = energyKeV.map(Math.log);
   const polynomials = new Float64Array(energyKeV.length * STRIDE);
   const place = (curve: PiecewiseCubic, from: number, to: number, offset: number) => {
@@ -301,10 +300,8 @@ function splineThrough(
 
 /** The photoelectric curve from edge to edge: straight lines below the K edge, a spline above it. */
 function photoelectricPieces({ energyKeV, photoelectric, shell }: ElementRows): PiecewiseCubic[] {
-  // Edges below 1 keV are not in the table, so that nothing holds across them; the range in use starts there.
-  const first = energyKeV.findIndex((energy) => energy >= MIN_ENERGY_KEV);
   const kEdge = shell.indexOf('K');
-  const starts = [first, ...[...shell.keys()].filter((i) => shell[i] !== null)];
+  const starts = [0, ...[...shell.keys()].filter((i) => shell[i] !== null)];
   return starts.map((from, piece) => {
     const logEnergy = energyKeV.slice(from, starts[piece + 1]).map(Math.log);
     const logs = photoelectric.slice(from, starts[piece + 1]).map(Math.log);

@@ -1,6 +1,6 @@
 /** The elements 1–100 by symbol, name or atomic number. */
 import { MaterialError } from './errors.js';
-import { nearest } from './nearest.js';
+import { nearestWord } from './nearest.js';
 import { ELEMENT_ALIASES, ELEMENT_ROWS } from './tables/elements.js';
 
 export interface Element {
@@ -69,6 +69,6 @@ export function unknownElement(symbol: string): MaterialError {
     code: 'unknown_element',
     value: symbol,
     rule: 'must be the symbol of an element from H to Fm (upper and lower case as usual)',
-    suggestion: nearest(symbol, [...bySymbol.keys()]) ?? null,
+    suggestion: nearestWord(symbol, bySymbol.keys()),
   });
 }

@@ -34,7 +34,6 @@ export {
   resolveMaterial,
   type NamedMaterial,
 } from './named-materials.js';
-export { nearest } from './nearest.js';
 export {
   fluorescenceYield,
   relaxation,
@@ -45,3 +44,13 @@ export {
   type Transition,
 } from './relaxation.js';
 export { SUBSHELL_COUNT, subshellShares } from './subshell-shares.js';
+export { nearestWord } from './nearest.js';
+export { bremsstrahlungSpectrum } from './bremsstrahlung-spectrum.js';
+export {
+  csdaRangeGPerCm2,
+  electronStopping,
+  radiationYield,
+  type Matter,
+  type StoppingPower,
+} from './electrons.js';
+export { meanExcitationEv } from './mean-excitation.js';

@@ -1,12 +1,12 @@
 /**
- * The materials known by name: the elements and the tables of compounds and mixtures in `tables/`. Names are
- * taken in any case; so are the aliases.
+ * The materials known by name: the elements and the tables of compounds and mixtures in `tables/`. Case, spaces,
+ * hyphens and underscores make no difference in names and aliases.
  */
 import { checkDensity, checkedMaterial, constituentsOfFormula, constituentsOfMixture } from './compound.js';
 import { elementAliases, elementBySymbol, elements, findElement, type Element } from './elements.js';
 import { MaterialError } from './errors.js';
 import type { Constituent, Material } from './material.js';
-import { nearest } from './nearest.js';
+import { nearestWord, plain } from './nearest.js';
 import { DETECTOR_ROWS } from './tables/detectors.js';
 import { PLASTIC_ROWS } from './tables/plastics.js';
 import type { MaterialRow } from './tables/row.js';
@@ -32,16 +32,16 @@ const ROWS: readonly MaterialRow[] = [
 
 const rowsByName = new Map<string, MaterialRow>();
 for (const row of ROWS) {
-  for (const name of [row.name, ...row.aliases]) rowsByName.set(name.toLowerCase(), row);
+  for (const name of [row.name, ...row.aliases]) rowsByName.set(plain(name), row);
 }
 const built = new Map<MaterialRow, NamedMaterial>();
 
 /**
- * The material with this name, alias, element name or symbol; undefined where there is none. Case does not
- * matter, except for symbols (see `findElement`).
+ * The material with this name, alias, element name or symbol; undefined where there is none. Case,
+ * spaces, hyphens and underscores do not matter, except for symbols (see `findElement`).
  */
 export function findMaterial(name: string): NamedMaterial | undefined {
-  const row = rowsByName.get(name.trim().toLowerCase());
+  const row = rowsByName.get(plain(name));
   if (row) return materialOfRow(row);
   const element = findElement(name);
   return element && materialOfElement(element);
@@ -55,7 +55,9 @@ export function namedMaterials(): readonly NamedMaterial[] {
 /** The known name nearest to a mistyped one; undefined where none is near. */
 export function nearestMaterialName(name: string): string | undefined {
   const elementNames = elements().flatMap((element) => [element.name, ...elementAliases(element)]);
-  return nearest(name, [...ROWS.flatMap((row) => [row.name, ...row.aliases]), ...elementNames]);
+  return (
+    nearestWord(name, [...ROWS.flatMap((row) => [row.name, ...row.aliases]), ...elementNames]) ?? undefined
+  );
 }
 
 /**
@@ -99,7 +101,7 @@ export function materialFromMassFractions(
 function constituentsByWord(word: string): readonly Constituent[] {
   const symbol = elementBySymbol(word);
   if (symbol) return [{ z: symbol.z, massFraction: 1 }];
-  const row = rowsByName.get(word.trim().toLowerCase());
+  const row = rowsByName.get(plain(word));
   if (row) return materialOfRow(row).constituents;
   const element = findElement(word);
   if (element) return [{ z: element.z, massFraction: 1 }];

@@ -6,9 +6,11 @@ import { writeArrowFile } from './arrow-file.mjs';
 import { readSpecFile } from './specfile.mjs';
 
 const MAX_Z = 100;
+// XCOM begins at 1 keV; what the package lists at 0.1 and 0.5 keV is extrapolated, to 10³⁰ times the neighbour
+// in places.
+const FIRST_ENERGY_KEV = 1;
 // The range in use ends at 20 MeV; a few rows above it keep the end of the splines away from it.
 const LAST_ENERGY_KEV = 30_000;
-const MIN_EDGE_KEV = 1;
 // Most XCOM edges are Larkins' binding energies to all digits. They differ by 3 % at M5 of rhenium and by up
 // to 8 % in the N shells of the transuranium elements, where a shell is still the only one nearby.
 const EDGE_MATCH_TOLERANCE = 0.08;
@@ -45,14 +47,13 @@ function rowsOf({ number: z, labels, rows }) {
   ].map(column);
   const kept = [];
   for (const row of rows) {
-    if (row[energy] > LAST_ENERGY_KEV) break;
+    if (row[energy] < FIRST_ENERGY_KEV || row[energy] > LAST_ENERGY_KEV) continue;
     if (BROKEN_ROWS.has(`${z} ${row[energy]}`)) continue;
     const last = kept.at(-1);
     if (last && row[energy] < last.energy)
       throw new Error(`Z=${z}: energies not ascending at ${row[energy]}`);
-    const sameEnergy = last !== undefined && last.energy === row[energy];
-    if (sameEnergy && last.photoelectric === row[photoelectric]) continue;
-    const isEdge = sameEnergy && row[energy] >= MIN_EDGE_KEV;
+    const isEdge = last !== undefined && last.energy === row[energy];
+    if (isEdge && last.photoelectric === row[photoelectric]) continue;
     if (isEdge && row[photoelectric] < last.photoelectric) throw new Error(`Z=${z}: downward edge`);
     const sum = row[photoelectric] + row[incoherent] + row[coherent] + row[pair];
     if (Math.abs(sum / row[total] - 1) > 2e-4)
