@@ -26,7 +26,7 @@ const LABELS = {
   binMean: {
     name: 'mean',
     unit: '1',
-    description: `Content of the bin ${PER_PHOTON} (tally deposited: keV, by the energy of the photon that left it); null: unknown`,
+    description: `Content of the bin ${PER_PHOTON} (tally deposited: keV, by the energy left at one place); null: unknown`,
   },
   binError: {
     name: 'std_error',

@@ -17,18 +17,18 @@ export type Flaw =
   /** The run ended before this figure reached the precision asked for. */
   | 'short_of_until';
 
-/** The row that `until` watches: the first that has the quantity, in the layer named if one is, all lines first. */
+/** The row that `until` watches: the first that has the quantity, in the layer named if one is. */
 export function watchedRow(totals: readonly QuantityRow[], until: ManifestUntil): QuantityRow | null {
-  const rows = totals.filter(
-    (row) => row.quantity === until.quantity && (until.layer === null || row.layer === until.layer),
+  return (
+    totals.find(
+      (row) => row.quantity === until.quantity && (until.layer === null || row.layer === until.layer),
+    ) ?? null
   );
-  const layer = rows[0]?.layer;
-  return rows.find((row) => row.layer === layer && row.lineKeV === null) ?? rows[0] ?? null;
 }
 
 /** What is wrong with a figure; null where nothing is. */
 export function flawOf(row: QuantityRow, manifest: Manifest, watched: QuantityRow | null): Flaw | null {
-  if (row.mean === 0 && row.stdError === 0) {
+  if (row.mean === 0 && !(Number(row.stdError) > 0)) {
     return 'none_seen';
   }
   const error = relativeError(row.mean, row.stdError);

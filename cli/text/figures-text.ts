@@ -46,15 +46,6 @@ function scalesOf({ source }: Manifest): Scale[] {
   return scales;
 }
 
-/** False for figures that are 0 by the shape of the setup, which say nothing about the run. */
-function isPossible(row: QuantityRow, manifest: Manifest): boolean {
-  const layer = manifest.stack.find(({ name }) => name === row.layer);
-  const finite = manifest.extent !== null || manifest.stack.some(({ radius_cm: radius }) => radius !== null);
-  return (
-    (layer === undefined || layer.material !== null) && (finite || !row.quantity.startsWith('side_escape'))
-  );
-}
-
 interface FigureLine {
   readonly group: Group;
   readonly row: QuantityRow;
@@ -66,12 +57,10 @@ function orderFigures({ manifest, totals }: StoredResult): FigureLine[] {
   const watched = manifest.run.until && watchedRow(totals, manifest.run.until);
   const place = new Map(manifest.stack.map(({ name }, at) => [name, at]));
   const groups = Object.keys(GROUPS);
-  const lines = totals
-    .filter((row) => isPossible(row, manifest))
-    .map((row) => {
-      const inDetector = manifest.stack.some(({ name, detector }) => detector && name === row.layer);
-      return { group: groupOf(row.quantity, inDetector), row, flaw: flawOf(row, manifest, watched) };
-    });
+  const lines = totals.map((row) => {
+    const inDetector = manifest.stack.some(({ name, detector }) => detector && name === row.layer);
+    return { group: groupOf(row.quantity, inDetector), row, flaw: flawOf(row, manifest, watched) };
+  });
   const rank = ({ group, row }: FigureLine): number =>
     groups.indexOf(group) * (place.size + 1) +
     (row.layer === null ? -1 : (place.get(row.layer) ?? place.size));
@@ -88,7 +77,8 @@ function relativeText({ row, flaw }: FigureLine): string {
     return 'none seen';
   }
   if (row.stdError === 0) {
-    return 'exact';
+    // Counted in every history so far; only of what the source gives is it known that it must be.
+    return row.quantity === 'incident' ? 'exact' : '';
   }
   return row.mean === null || row.mean === 0 ? '' : formatPercent(relativeError(row.mean, row.stdError));
 }

@@ -1,7 +1,8 @@
 /** The one line on stderr that tells a person how far a run is; rewritten in place, a few times per second at most. */
 import type { Progress } from '../../engine/result.js';
+import type { Setup } from '../../engine/setup.js';
 import { clip } from '../show.js';
-import { truncate } from './display-width.js';
+import { prepareWidths, truncate } from './display-width.js';
 import {
   formatCount,
   formatDuration,
@@ -10,6 +11,8 @@ import {
   formatPercent,
   relativeError,
 } from './figure-format.js';
+import { makeStyle } from './style.js';
+import { describeTerminal } from './terminal.js';
 
 const SHORTEST_INTERVAL_MS = 200;
 /** To the line's start, and erase to its end (ECMA-48). */
@@ -71,4 +74,18 @@ export function makeProgressLine(
       }
     },
   };
+}
+
+/** The progress line of a run on stderr; null where nobody watches or `quiet` is asked. */
+export async function showProgress({ stack }: Setup, quiet: boolean): Promise<ProgressLine | null> {
+  const terminal = describeTerminal(process.stderr);
+  if (quiet || !terminal.interactive) {
+    return null;
+  }
+  await prepareWidths(stack.map(({ name }) => name));
+  return makeProgressLine(
+    (text) => process.stderr.write(text),
+    terminal.width,
+    makeStyle(terminal).plusMinus,
+  );
 }

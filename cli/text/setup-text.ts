@@ -2,7 +2,7 @@
 import type { Manifest, ManifestLayer, ManifestSource } from '../result/manifest.js';
 import { clip } from '../show.js';
 import { formatActivity, formatDuration, formatNumber } from './figure-format.js';
-import { renderTable } from './text-table.js';
+import { renderTable, wrap } from './text-table.js';
 
 const MOST_LINES_LISTED = 4;
 
@@ -67,8 +67,8 @@ function describeExtent(extent: Manifest['extent']): string[][] {
   return [['extent', size]];
 }
 
-/** Lines under "What went in". */
-export function describeSetup({ source, stack, extent, physics }: Manifest): string[] {
+/** Lines under "What went in", none wider than `width` save those of layers with long names. */
+export function describeSetup({ source, stack, extent, physics }: Manifest, width: number): string[] {
   const off = Object.keys(physics).filter((name) => physics[name] === false);
   const facts: string[][] = [
     ['source', describeShape(source)],
@@ -82,6 +82,13 @@ export function describeSetup({ source, stack, extent, physics }: Manifest): str
   if (off.length > 0) {
     facts.push(['left out', off.map((name) => name.replaceAll('_', ' ')).join(', ')]);
   }
-  facts.push(...renderTable(stack.map(describeLayer), 0).map((line, at) => [at === 0 ? 'layers' : '', line]));
-  return renderTable(facts);
+  const rows = facts.flatMap(([name, text]) => labelled(name, wrap(text, width - LABEL_WIDTH)));
+  return renderTable([...rows, ...labelled('layers', renderTable(stack.map(describeLayer), 0))]);
+}
+
+/** Indent, longest label and gap. */
+const LABEL_WIDTH = 12;
+
+function labelled(name: string, lines: readonly string[]): string[][] {
+  return lines.map((line, at) => [at === 0 ? name : '', line]);
 }

@@ -6,7 +6,7 @@ import { clip } from '../show.js';
 import { CONVERGED_BELOW, type Flaw } from './convergence.js';
 import { displayWidth } from './display-width.js';
 import { figuresText, flawsIn, MARKS } from './figures-text.js';
-import { formatCount, formatDuration, formatNumber, formatPercent } from './figure-format.js';
+import { formatCount, formatDuration, formatNumber } from './figure-format.js';
 import { GROUPS, type Group } from './quantities.js';
 import { describeSetup } from './setup-text.js';
 import { plotSpectrum } from './spectrum-plot.js';
@@ -57,7 +57,7 @@ function headed(heading: string, header: string, style: Style): string[] {
 
 function figureSections(result: StoredResult, style: Style): string[] {
   const [main, ...others] = figuresText(result, style);
-  const lines = ['', style.heading(GROUPS.in), ...describeSetup(result.manifest)];
+  const lines = ['', style.heading(GROUPS.in), ...describeSetup(result.manifest, style.width)];
   for (const group of Object.keys(GROUPS) as Group[]) {
     const own = main.byGroup.get(group) ?? [];
     if (own.length > 0) {
@@ -81,7 +81,7 @@ function legend(result: StoredResult, style: Style): string[] {
     imprecise: `not converged: standard error above ${formatNumber(100 * CONVERGED_BELOW)} % of the value, or nothing seen; more histories help`,
     short_of_until:
       until &&
-      `${STOPPED[result.manifest.stopped]} before ${clip(until.quantity)} reached ${formatPercent(until.relative_error)}`,
+      `${STOPPED[result.manifest.stopped]} before ${clip(until.quantity)} reached ${formatNumber(100 * until.relative_error)} %`,
   };
   const shown = new Set<Flaw>([...flaws].map((flaw) => (flaw === 'none_seen' ? 'imprecise' : flaw)));
   const lines = [...shown].flatMap((flaw) => wrap(`${MARKS[flaw]} ${texts[flaw]}`, style.width));
