@@ -200,6 +200,9 @@ export const complaints = {
     new Complaint('file_missing', `file ${show(file)} does not exist`, null, false),
   fileUnreadable: (file: string, why: string) =>
     new Complaint('file_unreadable', `file ${show(file)} cannot be read, ${why}`, null, false),
+  setupMissing: () => new Complaint('file_missing', 'does not exist', null, false),
+  setupUnreadable: (why: string) => new Complaint('file_unreadable', `cannot be read, ${why}`, null, false),
+  notAFile: () => new Complaint('file_unreadable', 'is not a file', null, false),
   fileOutside: () =>
     new Complaint(
       'file_outside',
@@ -207,14 +210,14 @@ export const complaints = {
       'copy the file there and give its name alone',
     ),
   tooLarge: (limit: string) => new Complaint('too_large', `must not be larger than ${limit}`, null, false),
-  tooDeep: (levels: number) =>
-    new Complaint('too_large', `must not be nested more than ${levels} levels deep`, null, false),
+  tooDeep: () => new Complaint('too_large', 'is nested too deeply for a setup', null, false),
   notYaml: (what: string, wayOut: string | null = null) =>
     new Complaint('not_yaml', `is not YAML: ${what}`, wayOut, false),
   forbiddenYaml: (what: string, wayOut: string) =>
     new Complaint('forbidden_yaml', `${what} not allowed in a setup file`, wayOut, false),
   forbiddenKey: (key: string) =>
     new Complaint('forbidden_key', `${show(key)} cannot be used as a name`, 'choose another one', false),
+  badKey: () => new Complaint('wrong_type', 'every key must be a text', 'put the key in quotes', false),
   duplicateKey: (line: number) =>
     new Complaint('duplicate_key', `is given twice, first on line ${line}`, 'remove one of them', false),
   wrongType: (wanted: string, wayOut: string | null = null) =>
@@ -261,6 +264,12 @@ export const complaints = {
     ),
   decimalComma: (corrected: string) =>
     new Complaint('not_a_quantity', 'must have a decimal point, not a comma', `write "${clip(corrected)}"`),
+  widthForm: () =>
+    new Complaint(
+      'not_a_quantity',
+      'must be a width at an energy, the coefficients a, b and c, or a list of widths',
+      'write it as in "7 % at 661.7 keV"',
+    ),
   notANumber: (what: string) => new Complaint('not_a_number', `must be ${what}`),
   notFinite: () => new Complaint('not_finite', 'must be a finite number'),
   outOfRange: (rule: string, wayOut: string | null = null) =>
@@ -276,7 +285,15 @@ export const complaints = {
       'give each its own name',
       false,
     ),
-  badMaterial: (rule: string, wayOut: string | null) => new Complaint('bad_material', rule, wayOut),
+  badMaterial: (rule: string, nearest: string | null) =>
+    new Complaint('bad_material', rule, didYouMean(nearest)),
+  formulaWithoutDensity: (formula: string) =>
+    new Complaint(
+      'bad_material',
+      `the formula ${show(formula)} needs a density`,
+      'add density to the layer, or define the material under materials',
+      false,
+    ),
   badSpectrumFile: (file: string, line: number | null, rule: string, wayOut: string | null = null) =>
     new Complaint(
       'bad_spectrum_file',

@@ -136,6 +136,11 @@ export interface Setup {
   readonly tally: Tally;
   readonly physics: Physics;
   readonly run: RunOptions;
+  /**
+   * Energies of an efficiency curve, ascending: each is to be run by itself in place of the source's one line, which
+   * is the highest of them. Null or absent: an ordinary run.
+   */
+  readonly energyGridKeV?: readonly number[] | null;
 }
 
 export const MAX_LAYERS = 64;
