@@ -1,6 +1,6 @@
 // Builds the package into dist/: compiled TypeScript beside the data tables it reads at run time.
 import { execFileSync } from 'node:child_process';
-import { chmodSync, cpSync, mkdirSync, readdirSync, rmSync } from 'node:fs';
+import { chmodSync, cpSync, mkdirSync, readdirSync, rmSync, writeFileSync } from 'node:fs';
 
 rmSync('dist', { recursive: true, force: true });
 execFileSync(process.execPath, ['node_modules/typescript/bin/tsc', '-p', 'tsconfig.build.json'], {
@@ -12,4 +12,6 @@ for (const file of readdirSync('materials/data')) {
     cpSync(`materials/data/${file}`, `dist/materials/data/${file}`);
   }
 }
+const { setupJsonSchema } = await import('./dist/cli/setup-schema.js');
+writeFileSync('dist/setup.schema.json', `${JSON.stringify(setupJsonSchema(), null, 2)}\n`);
 chmodSync('dist/cli/main.js', 0o755);
