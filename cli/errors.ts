@@ -4,7 +4,7 @@
  *
  * A line reads `file: path: rule, got value (line, column); way out`.
  */
-import { nearestWord } from './nearest.js';
+import { nearestWord } from '../materials/index.js';
 import { clip, listOr, show, showNumber } from './show.js';
 
 /** How the program ends; `--help` lists the meanings. */

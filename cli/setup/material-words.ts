@@ -4,11 +4,11 @@ import {
   materialFromMassFractions,
   MaterialError,
   nearestMaterialName,
+  nearestWord,
   resolveMaterial,
   type Material,
 } from '../../materials/index.js';
 import { complaints, type Complaint, type Path } from '../errors.js';
-import { nearestWord } from '../nearest.js';
 import type { SetupKeys } from '../setup-schema.js';
 import { MAX_MATERIALS } from './limits.js';
 import type { ProblemList } from './problem-list.js';

@@ -1,7 +1,7 @@
 /** Physics switches and the end of the run, with what the rest of the setup must have for them. */
 import type { DoseQuantity, Physics, RunOptions, Until } from '../../engine/setup.js';
+import { nearestWord } from '../../materials/index.js';
 import { complaints, type Complaint } from '../errors.js';
-import { nearestWord } from '../nearest.js';
 import type { SetupKeys } from '../setup-schema.js';
 import { DEFAULTS } from './limits.js';
 import type { ProblemList } from './problem-list.js';

@@ -1,8 +1,7 @@
 /** The layers of a setup: names, materials, thicknesses, detectors. */
 import type { Detector, EnergyWindow, Extent, Layer, Resolution } from '../../engine/setup.js';
-import type { Material } from '../../materials/index.js';
+import { nearestWord, type Material } from '../../materials/index.js';
 import { complaints, type Path } from '../errors.js';
-import { nearestWord } from '../nearest.js';
 import type { SetupKeys } from '../setup-schema.js';
 import { showNumber } from '../show.js';
 import type { Quantity } from '../units.js';
