@@ -54,3 +54,13 @@ export {
   type StoppingPower,
 } from './electrons.js';
 export { meanExcitationEv } from './mean-excitation.js';
+export {
+  findNuclide,
+  nearestNuclideName,
+  nuclideLines,
+  nuclides,
+  type ChainMember,
+  type LineKind,
+  type Nuclide,
+  type NuclideLine,
+} from './nuclides.js';
