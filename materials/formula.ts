@@ -30,7 +30,7 @@ export function parseFormula(formula: string): AtomCounts {
   if (text === '' || text.length > MAX_LENGTH) {
     throw badFormula(formula, `must be a chemical formula of 1 to ${MAX_LENGTH} characters`);
   }
-  const hydrate = /^(.*\D\d*)\.(\d*H2O)$/.exec(text);
+  const hydrate = /^(.*[A-Za-z)\]]\d*)\.(\d*H2O)$/.exec(text);
   if (hydrate) {
     const suggestion = `${hydrate[1]}·${hydrate[2]}`;
     throw badFormula(formula, 'must have the water of a hydrate after "·" or "*", not after "."', suggestion);

@@ -114,14 +114,15 @@ function constituentsByWord(word: string): readonly Constituent[] {
 
 /** What to say of a word that is neither a name nor a formula: the nearest name, or what the formula lacks. */
 function unknownWord(word: string, formulaError: MaterialError): MaterialError {
+  const formulaLike = /^[A-Z([][A-Za-z0-9()[\].·*]*$/.test(word);
+  if (formulaLike && /[0-9()[\]]/.test(word)) return formulaError;
   const suggestion = nearestMaterialName(word) ?? null;
-  const looksLikeFormula = /^[A-Z([][A-Za-z0-9()[\].·*]*$/.test(word) && /[A-Z0-9()[\]]/.test(word.slice(1));
-  if (suggestion === null && looksLikeFormula) return formulaError;
+  if (suggestion === null && formulaLike && /[A-Z]/.test(word.slice(1))) return formulaError;
   return new MaterialError({
     code: 'unknown_material',
     value: JSON.stringify(word),
     rule: 'must be the name of a material, the symbol of an element or a chemical formula',
-    suggestion: suggestion ?? formulaError.suggestion,
+    suggestion,
   });
 }
 

@@ -156,6 +156,14 @@ describe('absorption edges', () => {
     },
   );
 
+  it('of the M5 shell of rhenium lies at its binding energy, between those of its neighbours', () => {
+    // XCOM itself places it at 1.8224 keV. Source: F. P. Larkins, At. Data Nucl. Data Tables 20 (1977) 311.
+    const m5 = [74, 75, 76].map((z) => absorptionEdges(z).find(({ shell }) => shell === 'M5')!.energyKeV);
+    expect(m5).toEqual([1.8092, 1.8829, 1.9601]);
+    const [lower, upper] = [1.83, 1.88].map((energyKeV) => elementCoefficients(75, energyKeV).photoelectric);
+    expect(upper).toBeLessThan(lower);
+  });
+
   it('are listed from 1 keV upwards with their shells, ascending', () => {
     // Source: XCOM edge energies; below 1 keV (oxygen) none is given.
     expect(absorptionEdges(8)).toEqual([]);

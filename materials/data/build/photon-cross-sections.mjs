@@ -11,8 +11,8 @@ const MAX_Z = 100;
 const FIRST_ENERGY_KEV = 1;
 // The range in use ends at 20 MeV; a few rows above it keep the end of the splines away from it.
 const LAST_ENERGY_KEV = 30_000;
-// Most XCOM edges are Larkins' binding energies to all digits. They differ by 3 % at M5 of rhenium and by up
-// to 8 % in the N shells of the transuranium elements, where a shell is still the only one nearby.
+// Most XCOM edges are Larkins' binding energies to all digits. They differ by up to 8 % in the N shells of the
+// transuranium elements, where a shell is still the only one nearby.
 const EDGE_MATCH_TOLERANCE = 0.08;
 
 const folder = process.argv[2] ?? '/usr/share/fisx';
@@ -22,7 +22,12 @@ const [bindings] = readSpecFile(join(folder, 'BindingEnergies.dat'));
 // Rows midway between two M edges whose scattering coefficients stand out of their own curve, by 5 % and 1 %
 // (protactinium even goes down again). The photoelectric value there is that of the straight line between the
 // edges, so that leaving the row out loses nothing.
-const BROKEN_ROWS = new Set(['91 5.1807', '87 3.3894']);
+// The one of rhenium is interpolated from the misplaced edge below.
+const BROKEN_ROWS = new Set(['91 5.1807', '87 3.3894', '75 1.8846']);
+
+// XCOM has the M5 edge of rhenium at 1.8224 keV, out of line with its neighbours (1.8092 for tungsten, 1.9601 for
+// osmium); the coefficients there are those of the edge at 1.8829 keV, Larkins' binding energy.
+const MISPLACED_EDGE = { z: 75, energyKeV: 1.8224, rightKeV: 1.8829 };
 
 /** Name of the shell of element z whose edge is the one of the given rank, counted down from the K edge (0). */
 function shellOfRank(z, rank, energyKeV) {
@@ -32,6 +37,19 @@ function shellOfRank(z, rank, energyKeV) {
     throw new Error(`Z=${z}: edge at ${energyKeV} keV is not that of ${bindings.labels[rank + 1]}`);
   }
   return bindings.labels[rank + 1];
+}
+
+/** Moves the misplaced edge; the scattering coefficients of its rows are taken along their own curve. */
+function moveEdge(rows) {
+  const { energyKeV, rightKeV } = MISPLACED_EDGE;
+  const moved = rows.filter(({ energy }) => energy === energyKeV);
+  const next = rows[rows.indexOf(moved[1]) + 1];
+  const share = Math.log(rightKeV / energyKeV) / Math.log(next.energy / energyKeV);
+  for (const row of moved) {
+    row.energy = rightKeV;
+    row.incoherent *= (next.incoherent / row.incoherent) ** share;
+    row.coherent *= (next.coherent / row.coherent) ** share;
+  }
 }
 
 /** Rows of one element without repeats; an edge stays as two rows, the upper one with the shell's name. */
@@ -69,6 +87,7 @@ function rowsOf({ number: z, labels, rows }) {
       shell: null,
     });
   }
+  if (z === MISPLACED_EDGE.z) moveEdge(kept);
   const edges = kept.filter(({ isEdge }) => isEdge).reverse();
   edges.forEach((edge, rank) => (edge.shell = shellOfRank(z, rank, edge.energy)));
   return kept;
