@@ -1,0 +1,49 @@
+/** What runs in a worker thread: consecutive batches of a problem, each with its own random stream. */
+import { move, transferableSymbol, valueSymbol } from 'piscina';
+import { BatchTally } from './batch-tally.js';
+import { Site } from './physics/interact.js';
+import type { Problem } from './problem.js';
+import { seedStream } from './random.js';
+import type { BatchResult } from './run-sums.js';
+import { runSlabBatch } from './slab-kernel.js';
+
+/** Batches `first`, `first + 1`, … with their numbers of histories. */
+export interface BatchTask {
+  readonly problem: Problem;
+  readonly first: number;
+  readonly histories: readonly number[];
+}
+
+/** Plays the batches of a task. */
+export function playBatches(task: BatchTask): BatchResult[] {
+  const results = task.histories.map((histories, i) => playBatch(task.problem, task.first + i, histories));
+  const buffers = results.flatMap((result) => [
+    result.cellSum.buffer,
+    result.cellSquare.buffer,
+    result.figureSum.buffer,
+    result.figureSquare.buffer,
+  ]);
+  return move({
+    [transferableSymbol]: buffers,
+    [valueSymbol]: results,
+  } as unknown as ArrayBuffer) as unknown as BatchResult[];
+}
+
+/** Plays one batch in this thread. */
+export function playBatch(problem: Problem, batch: number, histories: number): BatchResult {
+  const startedMs = performance.timeOrigin + performance.now();
+  const tally = new BatchTally(problem.tally);
+  const site = new Site();
+  seedStream(site.random, problem.seed, batch);
+  runSlabBatch(problem, histories, site, tally);
+  return {
+    histories,
+    cellSum: tally.cellSum,
+    cellSquare: tally.cellSquare,
+    figureSum: tally.figureSum,
+    figureSquare: tally.figureSquare,
+    dopplerGivenUp: site.dopplerGivenUp,
+    startedMs,
+    endedMs: performance.timeOrigin + performance.now(),
+  };
+}

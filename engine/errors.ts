@@ -1,0 +1,15 @@
+/** Errors of the engine: a run that cannot start or cannot be trusted. */
+
+export type EngineErrorCode = 'unsupported' | 'worker_failed' | 'balance';
+
+export class EngineError extends Error {
+  override readonly name = 'EngineError';
+
+  constructor(
+    readonly code: EngineErrorCode,
+    message: string,
+    options?: ErrorOptions,
+  ) {
+    super(message, options);
+  }
+}

@@ -1,0 +1,147 @@
+/**
+ * One interaction of a photon with a material, all processes: which process, what the photon becomes, what stays, and
+ * what is set free. The history loops call it at each collision; they own flight, geometry and tallies.
+ */
+import { ELECTRON_REST_KEV, PAIR_THRESHOLD_KEV } from '../constants.js';
+import { CELL_LENGTH, type Problem } from '../problem.js';
+import { nextOpenUniform, nextUniform, type StreamState } from '../random.js';
+import { sampleBremsstrahlung } from './bremsstrahlung.js';
+import { sampleCoherent } from './coherent.js';
+import { sampleDoppler } from './doppler.js';
+import { comptonEnergyRatio } from './klein-nishina.js';
+import { sampleIncoherent } from './incoherent.js';
+import { relax } from './relaxation.js';
+import { Secondaries } from './secondaries.js';
+
+/** What an interaction can be; `interact` returns one of these. */
+export const PHOTOELECTRIC = 0;
+export const INCOHERENT = 1;
+export const COHERENT = 2;
+export const PAIR = 3;
+
+/** Room of a batch for the outcome of an interaction; made once, reused for each. */
+export class Site {
+  /** Photon in: its energy. Photon out: its energy, 0 when it is gone. */
+  energyKeV = 0;
+  /** v = (1 − cos θ)/2 of the photon that goes on. */
+  v = 0;
+  /** Energy left on the spot. */
+  depositedKeV = 0;
+  readonly secondaries = new Secondaries();
+  readonly random: StreamState = new Float64Array(4);
+  /** Draws refused too often by the Doppler sampler (rare oddity, reported). */
+  dopplerGivenUp = 0;
+  readonly electronPhotons = new Float64Array(64);
+  readonly next = () => nextOpenUniform(this.random);
+}
+
+/**
+ * Plays one interaction of a photon of `site.energyKeV` in material `slot`, at grid cell `cell`; the outcome is in
+ * `site`.
+ */
+export function interact(problem: Problem, site: Site, slot: number, cell: number): number {
+  const { cells } = problem;
+  const energyKeV = site.energyKeV;
+  const at = (slot * problem.cellCount + cell) * CELL_LENGTH;
+  const pick = nextUniform(site.random);
+  site.secondaries.count = 0;
+  if (pick < cells[at + 2] + cells[at + 3] * energyKeV) {
+    absorb(problem, site, slot, cell);
+    return PHOTOELECTRIC;
+  }
+  if (pick < cells[at + 4] + cells[at + 5] * energyKeV) {
+    scatter(problem, site, slot);
+    return INCOHERENT;
+  }
+  if (energyKeV <= PAIR_THRESHOLD_KEV || pick < cells[at + 6] + cells[at + 7] * energyKeV) {
+    site.v = sampleCoherent(problem.coherent, problem.coherentBase[slot], energyKeV, site.random);
+    site.depositedKeV = 0;
+    return COHERENT;
+  }
+  producePair(problem, site, slot);
+  return PAIR;
+}
+
+/** Photoelectric absorption: the shell of the vacancy, its relaxation, the photoelectron. */
+function absorb(problem: Problem, site: Site, slot: number, cell: number): void {
+  const energyKeV = site.energyKeV;
+  let electronKeV = energyKeV;
+  let emittedKeV = 0;
+  const channels = problem.channelCount[slot];
+  if (channels > 0) {
+    const u = nextUniform(site.random);
+    const first = problem.channelBase[slot];
+    let at = problem.channelTableBase[slot] + cell * channels * 2;
+    for (let channel = first; channel < first + channels; channel++, at += 2) {
+      if (u < problem.channelTable[at] + problem.channelTable[at + 1] * energyKeV) {
+        const shell = problem.channelShell[channel];
+        electronKeV = Math.max(0, energyKeV - problem.relaxation.bindingKeV[shell]);
+        emittedKeV = relax(problem.relaxation, shell, energyKeV, problem.cutoffKeV, site.secondaries, site.random);
+        break;
+      }
+    }
+  }
+  emittedKeV += radiate(problem, site, slot, electronKeV, 1);
+  site.energyKeV = 0;
+  site.depositedKeV = energyKeV - emittedKeV;
+}
+
+/** Incoherent scattering: angle, Doppler-broadened energy, recoil electron. */
+function scatter(problem: Problem, site: Site, slot: number): void {
+  const energyKeV = site.energyKeV;
+  const v = sampleIncoherent(problem.incoherent, problem.incoherentBase[slot], energyKeV, nextUniform(site.random));
+  let scatteredKeV = energyKeV * comptonEnergyRatio(energyKeV, v);
+  const shells = problem.dopplerCount[slot];
+  if (shells > 0 && energyKeV < problem.dopplerTopKeV) {
+    const broadened = sampleDoppler(problem.doppler, problem.dopplerBase[slot], shells, energyKeV, v, site.random);
+    if (broadened > 0) scatteredKeV = broadened;
+    else site.dopplerGivenUp++;
+  }
+  const electronKeV = energyKeV - scatteredKeV;
+  const emittedKeV = radiate(problem, site, slot, electronKeV, recoilCosine(energyKeV, v));
+  site.v = v;
+  if (scatteredKeV >= problem.cutoffKeV) {
+    site.energyKeV = scatteredKeV;
+    site.depositedKeV = electronKeV - emittedKeV;
+  } else {
+    site.energyKeV = 0;
+    site.depositedKeV = energyKeV - emittedKeV;
+  }
+}
+
+/** Pair production (in the field of nucleus or electron alike): two 511 keV quanta back to back, isotropic. */
+function producePair(problem: Problem, site: Site, slot: number): void {
+  const energyKeV = site.energyKeV;
+  const kineticKeV = energyKeV - PAIR_THRESHOLD_KEV;
+  // The kinetic energy is shared evenly at random: the Bethe–Heitler spectrum is nearly flat.
+  const electronKeV = kineticKeV * nextUniform(site.random);
+  let emittedKeV = radiate(problem, site, slot, electronKeV, 1);
+  emittedKeV += radiate(problem, site, slot, kineticKeV - electronKeV, 1);
+  if (problem.cutoffKeV <= ELECTRON_REST_KEV) {
+    const cosine = 2 * nextUniform(site.random) - 1;
+    site.secondaries.push(ELECTRON_REST_KEV, cosine, 0);
+    site.secondaries.push(ELECTRON_REST_KEV, -cosine, 1);
+    emittedKeV += PAIR_THRESHOLD_KEV;
+  }
+  site.energyKeV = 0;
+  site.depositedKeV = energyKeV - emittedKeV;
+}
+
+/** Bremsstrahlung of an electron (or positron: same yields) that stops here; returns the energy radiated. */
+function radiate(problem: Problem, site: Site, slot: number, electronKeV: number, cosine: number): number {
+  const tables = problem.bremsstrahlung[slot];
+  if (tables === null || electronKeV <= problem.cutoffKeV) return 0;
+  const count = sampleBremsstrahlung(tables, electronKeV, site.next, site.electronPhotons);
+  let radiatedKeV = 0;
+  for (let i = 0; i < count; i++) {
+    radiatedKeV += site.electronPhotons[i];
+    site.secondaries.push(site.electronPhotons[i], cosine, 0);
+  }
+  return radiatedKeV;
+}
+
+/** cos φ of a free recoil electron: cot φ = (1 + k) tan(θ/2). */
+function recoilCosine(energyKeV: number, v: number): number {
+  const cotangent = (1 + energyKeV / ELECTRON_REST_KEV) * Math.sqrt(v / (1 - v + 1e-300));
+  return cotangent / Math.sqrt(1 + cotangent * cotangent);
+}

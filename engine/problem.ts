@@ -1,0 +1,73 @@
+/**
+ * The compiled problem: everything a worker needs, as typed arrays in shared memory, made once per run from the setup.
+ * Layers refer to slots; a slot is one material at one density. Vacuum is a slot whose coefficients are 0.
+ */
+import type { BremsstrahlungTables } from './physics/bremsstrahlung.js';
+import type { DopplerTables } from './physics/doppler.js';
+import type { RelaxationTables } from './physics/relaxation.js';
+import type { EnergyGrid } from './energy-grid.js';
+import type { EmissionTable } from './emission.js';
+import type { TallyLayout } from './tally-layout.js';
+import type { SourceShape } from './setup.js';
+
+/**
+ * Numbers per cell and slot, each a straight line a + b E over the cell: linear attenuation coefficient (1/cm), then
+ * the cumulative shares of photoelectric, + incoherent, + coherent (the rest is pair). One cache line.
+ */
+export const CELL_LENGTH = 8;
+
+export interface Problem {
+  readonly seed: string;
+  readonly grid: EnergyGrid;
+  readonly cellCount: number;
+  readonly cells: Float64Array;
+
+  readonly layers: number;
+  /** Layer l lies between boundaries l and l + 1, cm from the front face. */
+  readonly boundariesCm: Float64Array;
+  readonly slotOfLayer: Int32Array;
+
+  readonly source: SourceShape;
+  /** Direction cosine of a beam; layer number of an embedded source. */
+  readonly beamCosine: number;
+  readonly sourceLayer: number;
+  readonly emission: EmissionTable;
+  /** Every history starts with it; 1 unless directions are chosen from a part of the sphere. */
+  readonly historyWeight: number;
+
+  readonly cutoffKeV: number;
+  /** No process beyond photoelectric absorption and free-electron scattering is on. */
+  readonly plain: boolean;
+
+  readonly incoherent: Float64Array;
+  readonly incoherentBase: Int32Array;
+  readonly coherent: Float64Array;
+  readonly coherentBase: Int32Array;
+
+  readonly dopplerTopKeV: number;
+  readonly doppler: DopplerTables;
+  readonly dopplerBase: Int32Array;
+  readonly dopplerCount: Int32Array;
+
+  /** Shells whose vacancies are followed, per slot; the cumulative share of each is a line over each cell. */
+  readonly channelBase: Int32Array;
+  readonly channelCount: Int32Array;
+  readonly channelShell: Int32Array;
+  readonly channelTable: Float64Array;
+  readonly channelTableBase: Int32Array;
+  readonly relaxation: RelaxationTables;
+
+  readonly bremsstrahlung: readonly (BremsstrahlungTables | null)[];
+
+  readonly tally: TallyLayout;
+}
+
+/** A Float64Array that all workers share. */
+export function sharedDoubles(length: number): Float64Array {
+  return new Float64Array(new SharedArrayBuffer(8 * length));
+}
+
+/** An Int32Array that all workers share. */
+export function sharedInts(length: number): Int32Array {
+  return new Int32Array(new SharedArrayBuffer(4 * length));
+}

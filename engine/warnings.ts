@@ -1,0 +1,31 @@
+/** The warnings a run can give: one closed vocabulary, each given once with its count. */
+import type { Warning } from './result.js';
+import type { Setup } from './setup.js';
+import { PAIR_THRESHOLD_KEV } from './constants.js';
+
+/** Warnings that stand before the first history is played. */
+export function setupWarnings(setup: Setup, topKeV: number): Warning[] {
+  const warnings: Warning[] = [];
+  if (!setup.physics.pair && topKeV > PAIR_THRESHOLD_KEV) {
+    warnings.push({
+      code: 'pair_off',
+      message:
+        `the source reaches ${topKeV} keV but pair production is switched off: ` +
+        'attenuation is too low above 1022 keV and annihilation quanta are missing',
+      count: 1,
+    });
+  }
+  return warnings;
+}
+
+/** Warnings from what was counted during the run. */
+export function oddityWarnings(dopplerGivenUp: number): Warning[] {
+  if (dopplerGivenUp === 0) return [];
+  return [
+    {
+      code: 'doppler_given_up',
+      message: 'scatterings for which no electron momentum was found kept the free-electron energy',
+      count: dopplerGivenUp,
+    },
+  ];
+}

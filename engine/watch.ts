@@ -1,0 +1,63 @@
+/** The figure a run is watched by: the one `until` names, or the leading one of the setup. */
+import { EngineError } from './errors.js';
+import type { Problem } from './problem.js';
+import type { QuantityRow } from './result.js';
+import type { RunSums } from './run-sums.js';
+import type { Setup, Until } from './setup.js';
+import { totalsOf } from './totals.js';
+
+/** Batches before an error is trusted enough to stop on it. */
+const MIN_BATCHES = 10;
+
+export interface Watch {
+  /** Whether `until` is met at this batch boundary. */
+  met(sums: RunSums): boolean;
+  figure(sums: RunSums): QuantityRow | null;
+  /** Work needed in all over work done, by the 1/√N law; Infinity where nothing is aimed at. */
+  workFactor(sums: RunSums): number;
+}
+
+/** The watch of a setup. Throws EngineError when `until` names a figure the setup does not give. */
+export function watchFor(setup: Setup, problem: Problem): Watch {
+  const { until } = setup.run;
+  const layout = problem.tally;
+  const find = (sums: RunSums) => {
+    const rows = totalsOf({
+      setup,
+      layout,
+      historyWeight: problem.historyWeight,
+      histories: Math.max(1, sums.histories),
+      sums: sums.figures(layout),
+    });
+    return until ? rowFor(rows, until) : leadingRow(rows);
+  };
+  return {
+    met: (sums) => {
+      if (!until || sums.batches < MIN_BATCHES) return false;
+      return relativeError(find(sums)) <= until.relativeError;
+    },
+    figure: find,
+    workFactor: (sums) => (until ? (relativeError(find(sums)) / until.relativeError) ** 2 : Infinity),
+  };
+}
+
+function rowFor(rows: readonly QuantityRow[], until: Until): QuantityRow {
+  const row = rows.find(
+    ({ quantity, layer }) => quantity === until.quantity && (until.layer === null || layer === until.layer),
+  );
+  if (!row) {
+    const where = until.layer === null ? '' : ` in layer ${until.layer}`;
+    throw new EngineError('unsupported', `until: this setup gives no ${until.quantity}${where}`);
+  }
+  return row;
+}
+
+function leadingRow(rows: readonly QuantityRow[]): QuantityRow | null {
+  const named = (name: string) => rows.find(({ quantity }) => quantity === name);
+  return named('full_energy') ?? named('transmitted') ?? null;
+}
+
+function relativeError(row: QuantityRow | null): number {
+  const { mean, stdError } = row ?? { mean: null, stdError: null };
+  return mean !== null && stdError !== null && mean > 0 ? stdError / mean : Infinity;
+}
