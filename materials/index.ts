@@ -64,3 +64,9 @@ export {
   type Nuclide,
   type NuclideLine,
 } from './nuclides.js';
+export {
+  airEnergyAbsorptionCm2PerG,
+  airRadiatedShare,
+  doseCoefficient,
+  type DoseCoefficientQuantity,
+} from './dose-coefficients.js';
