@@ -7,6 +7,7 @@ import { elementAliases, elementBySymbol, elements, findElement, type Element } 
 import { MaterialError } from './errors.js';
 import type { Constituent, Material } from './material.js';
 import { nearestWord, plain } from './nearest.js';
+import { ELEMENT_DENSITIES, ELEMENT_DENSITY_EXCEPTIONS } from './tables/elements.js';
 import { DETECTOR_ROWS } from './tables/detectors.js';
 import { PLASTIC_ROWS } from './tables/plastics.js';
 import type { MaterialRow } from './tables/row.js';
@@ -152,8 +153,7 @@ function materialOfElement(element: Element): NamedMaterial | undefined {
     constituents: [{ z: element.z, massFraction: 1 }],
     aliases: elementAliases(element),
     description: `element ${element.z}`,
-    densitySource:
-      element.symbol === 'Br' ? 'CRC Handbook, liquid (value from memory)' : 'NISTIR 5632, Table 1 (20 °C)',
+    densitySource: ELEMENT_DENSITY_EXCEPTIONS[element.symbol] ?? ELEMENT_DENSITIES,
     compositionSource: 'element',
   };
 }

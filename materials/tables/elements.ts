@@ -3,8 +3,7 @@
  * five digits, conventional value where the standard is an interval; mass number of the longest-lived isotope
  * where there is none), density in g/cm³ at 20 °C and 101.325 kPa (null where no bulk density is known).
  *
- * Densities are those of the NIST tables (NISTIR 5632, Table 1; carbon is graphite), except for bromine, which
- * is given as the liquid (CRC Handbook; value from memory).
+ * The sources of the densities stand below.
  */
 export const ELEMENT_ROWS: readonly (readonly [
   symbol: string,
@@ -113,6 +112,15 @@ export const ELEMENT_ROWS: readonly (readonly [
   ['Es', 'einsteinium', 252, null],
   ['Fm', 'fermium', 257, null],
 ];
+
+/** Where the densities come from. */
+export const ELEMENT_DENSITIES =
+  'NISTIR 5632 (Hubbell and Seltzer 1995), Table 1, as in the xraylib data package';
+export const ELEMENT_DENSITY_EXCEPTIONS: Readonly<Record<string, string>> = {
+  C: 'NIST ESTAR, graphite',
+  Al: 'NISTIR 5632 (Hubbell and Seltzer 1995), Table 1',
+  Br: 'CRC Handbook of Chemistry and Physics, liquid (value from memory)',
+};
 
 /** Other spellings and names of elements, in lower case. */
 export const ELEMENT_ALIASES: Readonly<Record<string, string>> = {

@@ -1,5 +1,5 @@
 /** Shields, building materials and fuels. */
-import { COMMON, CRC, FORMULA, NISTIR, NIST_LIST, PNNL, type MaterialRow } from './row.js';
+import { COMMON, CRC, FORMULA, NISTIR, NISTIR_MIX, NIST_LIST, PNNL, type MaterialRow } from './row.js';
 
 export const SHIELD_ROWS: readonly MaterialRow[] = [
   {
@@ -7,7 +7,7 @@ export const SHIELD_ROWS: readonly MaterialRow[] = [
     aliases: ['DU'],
     description: 'uranium metal; photons see no difference between isotopes',
     densityGPerCm3: 18.95,
-    densitySource: 'NISTIR 5632, Table 1',
+    densitySource: 'NISTIR 5632 (Hubbell and Seltzer 1995), Table 1, as in the xraylib data package',
     composition: 'U',
     compositionSource: 'element',
   },
@@ -166,7 +166,7 @@ export const SHIELD_ROWS: readonly MaterialRow[] = [
       Ca: 0.042951,
       Fe: 0.006435,
     },
-    compositionSource: NISTIR,
+    compositionSource: NISTIR_MIX,
   },
   {
     name: 'portland concrete',
@@ -205,7 +205,7 @@ export const SHIELD_ROWS: readonly MaterialRow[] = [
       Fe: 0.047505,
       Ba: 0.4634,
     },
-    compositionSource: NISTIR,
+    compositionSource: NISTIR_MIX,
   },
   {
     name: 'magnetite concrete',
@@ -325,7 +325,7 @@ export const SHIELD_ROWS: readonly MaterialRow[] = [
     aliases: [],
     description: 'dense lead glass, 75 % lead',
     densityGPerCm3: 6.22,
-    densitySource: NISTIR,
+    densitySource: NIST_LIST,
     composition: { O: 0.156453, Si: 0.080866, Ti: 0.008092, As: 0.002651, Pb: 0.751938 },
     compositionSource: NIST_LIST,
   },

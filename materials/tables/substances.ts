@@ -1,5 +1,5 @@
 /** Gases, liquids, glasses, ceramics and light alloys. */
-import { COMMON, CRC, FORMULA, NISTIR, NIST_LIST, PNNL, type MaterialRow } from './row.js';
+import { COMMON, CRC, FORMULA, NIST_LIST, PNNL, type MaterialRow } from './row.js';
 
 export const SUBSTANCE_ROWS: readonly MaterialRow[] = [
   {
@@ -16,7 +16,7 @@ export const SUBSTANCE_ROWS: readonly MaterialRow[] = [
     aliases: ['H2O', 'liquid water'],
     description: 'liquid water',
     densityGPerCm3: 1.0,
-    densitySource: NISTIR,
+    densitySource: NIST_LIST,
     composition: 'H2O',
     compositionSource: FORMULA,
   },
@@ -142,7 +142,7 @@ export const SUBSTANCE_ROWS: readonly MaterialRow[] = [
     aliases: ['pyrex'],
     description: 'borosilicate glass',
     densityGPerCm3: 2.23,
-    densitySource: NISTIR,
+    densitySource: NIST_LIST,
     composition: { B: 0.040064, O: 0.539562, Na: 0.028191, Al: 0.011644, Si: 0.37722, K: 0.003321 },
     compositionSource: NIST_LIST,
   },

@@ -1,5 +1,5 @@
 /** Tissues and their substitutes. */
-import { COMMON, FORMULA, NISTIR, NIST_LIST, type MaterialRow } from './row.js';
+import { COMMON, FORMULA, NISTIR, NISTIR_MIX, NIST_LIST, type MaterialRow } from './row.js';
 
 export const TISSUE_ROWS: readonly MaterialRow[] = [
   {
@@ -19,14 +19,14 @@ export const TISSUE_ROWS: readonly MaterialRow[] = [
       Cl: 0.002,
       K: 0.003,
     },
-    compositionSource: NISTIR,
+    compositionSource: NISTIR_MIX,
   },
   {
     name: 'ICRU tissue',
     aliases: ['ICRU four-component tissue', 'ICRU sphere'],
     description: 'four-component soft tissue of ICRU Report 33',
     densityGPerCm3: 1.0,
-    densitySource: NISTIR,
+    densitySource: NIST_LIST,
     composition: { H: 0.101172, C: 0.111, N: 0.026, O: 0.761828 },
     compositionSource: NIST_LIST,
   },
@@ -47,7 +47,7 @@ export const TISSUE_ROWS: readonly MaterialRow[] = [
       S: 0.003,
       Ca: 0.225,
     },
-    compositionSource: NISTIR,
+    compositionSource: NISTIR_MIX,
   },
   {
     name: 'compact bone',
