@@ -70,10 +70,11 @@ export function makeBremsstrahlungTables(
     turning: shared(STEPS + 1),
     rowStep: span / rowSteps,
     rows,
-    nodes: shared(NODES).map((_, i) => 1 - (1 - i / (NODES - 1)) ** 2),
+    nodes: shared(NODES),
     density: shared(rows * NODES),
     cumulative: shared(rows * NODES),
   };
+  for (let i = 0; i < NODES; i++) tables.nodes[i] = 1 - (1 - i / (NODES - 1)) ** 2;
   slowDown(material, tables, fillRows(material, tables));
   return tables;
 }
