@@ -2,7 +2,7 @@
 import { move, transferableSymbol, valueSymbol } from 'piscina';
 import { BatchTally } from './batch-tally.js';
 import { Site } from './physics/interact.js';
-import type { Problem } from './problem.js';
+import type { Kernel, Problem } from './problem.js';
 import { seedStream } from './random.js';
 import type { BatchResult } from './run-sums.js';
 import { runSlabBatch } from './slab-kernel.js';
@@ -13,6 +13,11 @@ export interface BatchTask {
   readonly first: number;
   readonly histories: readonly number[];
 }
+
+const KERNELS: Record<Kernel, (problem: Problem, histories: number, site: Site, tally: BatchTally) => void> =
+  {
+    slab: runSlabBatch,
+  };
 
 /** Plays the batches of a task. */
 export function playBatches(task: BatchTask): BatchResult[] {
@@ -35,7 +40,7 @@ export function playBatch(problem: Problem, batch: number, histories: number): B
   const tally = new BatchTally(problem.tally);
   const site = new Site();
   seedStream(site.random, problem.seed, batch);
-  runSlabBatch(problem, histories, site, tally);
+  KERNELS[problem.kernel](problem, histories, site, tally);
   return {
     histories,
     cellSum: tally.cellSum,

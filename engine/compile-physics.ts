@@ -55,11 +55,15 @@ interface ScatteringTables {
 }
 
 /** Angle tables; slots of one composition share theirs, and free electrons need one table for all. */
-export function makeScatteringTables(slots: readonly Slot[], topKeV: number, physics: Physics): ScatteringTables {
+export function makeScatteringTables(
+  slots: readonly Slot[],
+  topKeV: number,
+  physics: Physics,
+): ScatteringTables {
   const rows = incoherentRows(topKeV);
-  const compositions = [...new Map(slots.map((slot) => [compositionKey(slot.constituents), slot])).values()].filter(
-    (slot) => slot.constituents.length > 0,
-  );
+  const compositions = [
+    ...new Map(slots.map((slot) => [compositionKey(slot.constituents), slot])).values(),
+  ].filter((slot) => slot.constituents.length > 0);
   const incoherentCount = physics.boundIncoherent ? compositions.length : 1;
   const incoherent = sharedDoubles(incoherentCount * rows * ROW_LENGTH);
   const coherent = sharedDoubles(physics.coherent ? compositions.length * COHERENT_LENGTH : 1);
@@ -82,7 +86,9 @@ export function makeScatteringTables(slots: readonly Slot[], topKeV: number, phy
   const place = (length: number) => {
     const bases = sharedInts(slots.length);
     slots.forEach((slot, s) => {
-      const c = compositions.findIndex((other) => compositionKey(other.constituents) === compositionKey(slot.constituents));
+      const c = compositions.findIndex(
+        (other) => compositionKey(other.constituents) === compositionKey(slot.constituents),
+      );
       bases[s] = Math.max(0, c) * length;
     });
     return bases;
@@ -146,7 +152,12 @@ export function makeDoppler(slots: readonly Slot[], physics: Physics): Doppler {
     dopplerBase[s] = base;
     dopplerCount[s] = shells.length;
     if (shells.length > 0) {
-      fillAlias(shells.map(({ share }) => share), doppler.keep, doppler.alias, base);
+      fillAlias(
+        shells.map(({ share }) => share),
+        doppler.keep,
+        doppler.alias,
+        base,
+      );
     }
     for (const { bindingKeV, profile } of shells) {
       doppler.bindingKeV[base] = bindingKeV;
@@ -232,7 +243,9 @@ function shellShares(slot: Slot, nodesKeV: Float64Array) {
   return (constituent: Constituent, shell: number): Float64Array => {
     const own = photoelectric([constituent]);
     const share = atNodes(nodesKeV, (side) =>
-      energiesKeV.map((energy) => subshellShares(constituent.z, side === 'above' ? energy : energy * BELOW, out)[shell]),
+      energiesKeV.map(
+        (energy) => subshellShares(constituent.z, side === 'above' ? energy : energy * BELOW, out)[shell],
+      ),
     );
     return own.map((value, i) => (value * share[i]) / total[i]);
   };
@@ -246,7 +259,7 @@ export function makeRadiation(
 ): (BremsstrahlungTables | null)[] {
   return slots.map((slot) =>
     physics.bremsstrahlung && slot.constituents.length > 0
-      ? makeBremsstrahlungTables({ ...slot, name: slot.key }, topKeV, physics.cutoffKeV)
+      ? makeBremsstrahlungTables(slot, topKeV, physics.cutoffKeV)
       : null,
   );
 }

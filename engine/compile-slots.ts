@@ -1,5 +1,10 @@
 /** Slots of a problem and the coefficients each has on the energy grid. */
-import { absorptionEdges, coefficientArrays, fillCoefficients, type Constituent } from '../materials/index.js';
+import {
+  absorptionEdges,
+  coefficientArrays,
+  fillCoefficients,
+  type Constituent,
+} from '../materials/index.js';
 import { makeEnergyGrid, type EnergyGrid } from './energy-grid.js';
 import { CELL_LENGTH, sharedDoubles, sharedInts } from './problem.js';
 import type { Layer, Physics } from './setup.js';
@@ -58,7 +63,10 @@ export function fillLines(
 }
 
 /** Evaluates at every node of the grid; the first of two nodes at one energy means "below the edge". */
-export function atNodes(nodesKeV: Float64Array, fill: (side: 'above' | 'below') => Float64Array): Float64Array {
+export function atNodes(
+  nodesKeV: Float64Array,
+  fill: (side: 'above' | 'below') => Float64Array,
+): Float64Array {
   const above = fill('above');
   const below = fill('below');
   return above.map((value, i) => (nodesKeV[i + 1] === nodesKeV[i] ? below[i] : value));
@@ -85,7 +93,13 @@ export function makeCells(slots: readonly Slot[], grid: EnergyGrid, physics: Phy
     const total = photoelectric.map((value, i) => value + incoherent[i] + coherent[i] + pair[i]);
     const base = s * cellCount * CELL_LENGTH;
     const put = (offset: number, value: (i: number) => number) =>
-      fillLines(nodesKeV, total.map((_, i) => value(i)), cells, base + offset, CELL_LENGTH);
+      fillLines(
+        nodesKeV,
+        total.map((_, i) => value(i)),
+        cells,
+        base + offset,
+        CELL_LENGTH,
+      );
     put(0, (i) => slot.densityGPerCm3 * total[i]);
     put(2, (i) => photoelectric[i] / total[i]);
     put(4, (i) => (photoelectric[i] + incoherent[i]) / total[i]);

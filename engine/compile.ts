@@ -14,6 +14,7 @@ export function compile(setup: Setup): Problem {
   const { slots, slotOfLayer } = slotsOf(stack);
   const grid = gridOf(slots, topKeV);
   return {
+    kernel: 'slab',
     seed: setup.seed,
     grid,
     cellCount: grid.nodesKeV.length - 1,

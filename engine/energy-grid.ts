@@ -37,7 +37,9 @@ export function bucketStartKeV(bucket: number): number {
 /** The grid from 1 keV to the first bucket bound above `topKeV`, with `edgesKeV` as double nodes. */
 export function makeEnergyGrid(topKeV: number, edgesKeV: readonly number[]): EnergyGrid {
   const buckets = bucketOf(topKeV) + 1;
-  const edges = [...new Set(edgesKeV)].filter((e) => e >= 1 && e <= bucketStartKeV(buckets)).sort((a, b) => a - b);
+  const edges = [...new Set(edgesKeV)]
+    .filter((e) => e >= 1 && e <= bucketStartKeV(buckets))
+    .sort((a, b) => a - b);
   const nodes: number[] = [];
   const firstCell = new Int32Array(new SharedArrayBuffer(4 * (buckets + 1)));
   let next = 0;

@@ -10,7 +10,10 @@ export const AZIMUTH_COSINE = Float64Array.from({ length: AZIMUTH_STEPS + 2 }, (
 /** Intervals of the mantissa in the table of logarithms. */
 export const LOG_STEPS = 256;
 /** 1 / c and −ln c at the middle c of each interval of [1, 2). */
-export const LOG_INVERSE = Float64Array.from({ length: LOG_STEPS }, (_, i) => 1 / (1 + (i + 0.5) / LOG_STEPS));
+export const LOG_INVERSE = Float64Array.from(
+  { length: LOG_STEPS },
+  (_, i) => 1 / (1 + (i + 0.5) / LOG_STEPS),
+);
 export const LOG_NEGATIVE = LOG_INVERSE.map((inverse) => Math.log(inverse));
 /** 2^i: turns a double of exponent −i into one of [1, 2). */
 export const POWER_OF_TWO = Float64Array.from({ length: 128 }, (_, i) => 2 ** i);

@@ -16,7 +16,11 @@ import type { SourceShape } from './setup.js';
  */
 export const CELL_LENGTH = 8;
 
+/** Which history loop plays the problem: chosen once per run, so that infinite stacks pay nothing for finite ones. */
+export type Kernel = 'slab';
+
 export interface Problem {
+  readonly kernel: Kernel;
   readonly seed: string;
   readonly grid: EnergyGrid;
   readonly cellCount: number;

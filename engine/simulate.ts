@@ -28,7 +28,9 @@ export async function simulate(setup: Setup, options: SimulateOptions = {}): Pro
   const startMs = performance.now();
   const problem = compile(setup);
   const plan = planBatches(setup.run.histories, problem.tally.cells);
-  const pool = new WorkerPool(options.threads === undefined ? undefined : Math.min(options.threads, plan.batches));
+  const pool = new WorkerPool(
+    options.threads === undefined ? undefined : Math.min(options.threads, plan.batches),
+  );
   try {
     const run = new Run(setup, problem, plan, pool, options, startMs);
     await run.play();
@@ -86,7 +88,11 @@ class Run {
       return await this.pool.run({ problem: this.problem, first, histories });
     } catch (cause) {
       this.stopped ??= 'interrupted';
-      throw new EngineError('worker_failed', `a worker thread failed in batch ${first}: ${messageOf(cause)}`, { cause });
+      throw new EngineError(
+        'worker_failed',
+        `a worker thread failed in batch ${first}: ${messageOf(cause)}`,
+        { cause },
+      );
     }
   }
 
@@ -149,7 +155,10 @@ class Run {
     };
     const balance = balanceOf(figures.sums, problem.tally);
     if (balance.relativeError > BALANCE_TOLERANCE) {
-      throw new EngineError('balance', `energy is not conserved: in − deposited − out is ${balance.relativeError} of in`);
+      throw new EngineError(
+        'balance',
+        `energy is not conserved: in − deposited − out is ${balance.relativeError} of in`,
+      );
     }
     return {
       setup,
@@ -158,7 +167,10 @@ class Run {
       totals: sums.histories > 0 ? totalsOf(figures) : ([] as QuantityRow[]),
       spectra: sums.histories > 0 ? spectraOf(figures) : [],
       balance,
-      warnings: [...setupWarnings(setup, topEnergyKeV(problem.emission)), ...oddityWarnings(sums.dopplerGivenUp)],
+      warnings: [
+        ...setupWarnings(setup, topEnergyKeV(problem.emission)),
+        ...oddityWarnings(sums.dopplerGivenUp),
+      ],
       timings: {
         wallS: this.elapsedS(),
         workerS: this.workerMs / 1000,

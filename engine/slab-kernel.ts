@@ -10,13 +10,7 @@ import { BUCKET_OFFSET, BUCKET_SHIFT } from './energy-grid.js';
 import { addFigure, closeHistory, MAX_TOUCHED, type BatchTally } from './batch-tally.js';
 import { ELECTRON_REST_KEV } from './constants.js';
 import { lineEnergyKeV, pickLine } from './emission.js';
-import {
-  AZIMUTH_COSINE,
-  AZIMUTH_STEPS,
-  LOG_INVERSE,
-  LOG_NEGATIVE,
-  POWER_OF_TWO,
-} from './lookup-tables.js';
+import { AZIMUTH_COSINE, AZIMUTH_STEPS, LOG_INVERSE, LOG_NEGATIVE, POWER_OF_TWO } from './lookup-tables.js';
 import { COLUMNS, ROW_LENGTH, ROW_OFFSET, ROW_SHIFT } from './physics/incoherent.js';
 import { interact, type Site } from './physics/interact.js';
 import { CELL_LENGTH, type Problem } from './problem.js';
@@ -41,7 +35,8 @@ const wordView = new Uint32Array(doubleView.buffer);
 
 /** Plays `histories` histories with the stream in `site.random` into `tally`. */
 export function runSlabBatch(problem: Problem, histories: number, site: Site, tally: BatchTally): void {
-  const { boundariesCm, cells, cellCount, cutoffKeV, emission, incoherent, incoherentBase, layers, plain } = problem;
+  const { boundariesCm, cells, cellCount, cutoffKeV, emission, incoherent, incoherentBase, layers, plain } =
+    problem;
   const { slotOfLayer } = problem;
   const { nodesKeV, firstCell } = problem.grid;
   const { binGuide, binScale, edgesKeV, detectorOfLayer, bins, lines } = tally.layout;
@@ -111,7 +106,9 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
       const interval = (word >>> 12) & 255;
       const r = u * POWER_OF_TWO[exponent] * LOG_INVERSE[interval] - 1;
       let tau =
-        LOG_NEGATIVE[interval] + exponent * 0.6931471805599453 - r * (1 - r * (0.5 - r * (1 / 3 - r * (0.25 - r * 0.2))));
+        LOG_NEGATIVE[interval] +
+        exponent * 0.6931471805599453 -
+        r * (1 - r * (0.5 - r * (1 / 3 - r * (0.25 - r * 0.2))));
 
       // Flight through layers to a collision or out of the stack.
       let left = 0;
@@ -234,7 +231,8 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
 
         // Photons set free wait, with their direction cosine turned from that of the one that came in.
         for (let i = 0; i < emitted; i++) {
-          if (waiting >= STACK_DEPTH) throw new Error(`more than ${STACK_DEPTH} photons waiting in one history`);
+          if (waiting >= STACK_DEPTH)
+            throw new Error(`more than ${STACK_DEPTH} photons waiting in one history`);
           const cosine = secondaries.cosine[i];
           let direction = -stackW[waiting - 1 < 0 ? 0 : waiting - 1];
           if (secondaries.opposite[i] === 0) {

@@ -24,7 +24,12 @@ export function estimate(sum: number, square: number, histories: number, weight 
  * Ratio of two figures of which the first counts a part of the histories of the second (indicators): the covariance
  * is then the first one's own sum of squares.
  */
-export function partRatio(part: number, partSquare: number, whole: number, wholeSquare: number): Estimate | null {
+export function partRatio(
+  part: number,
+  partSquare: number,
+  whole: number,
+  wholeSquare: number,
+): Estimate | null {
   if (whole === 0) return null;
   const ratio = part / whole;
   if (partSquare === 0) return { mean: 0, stdError: null };

@@ -44,9 +44,9 @@ function row(
 }
 
 function stackRows(run: RunFigures): QuantityRow[] {
-  return STACK_QUANTITIES.filter(([quantity]) => hasSides(run.setup) || !quantity.startsWith('side_escape')).map(
-    ([quantity, figure, unit]) => row(run, figure, quantity, unit),
-  );
+  return STACK_QUANTITIES.filter(
+    ([quantity]) => hasSides(run.setup) || !quantity.startsWith('side_escape'),
+  ).map(([quantity, figure, unit]) => row(run, figure, quantity, unit));
 }
 
 function layerRows(run: RunFigures): QuantityRow[] {
@@ -67,7 +67,9 @@ function detectorRows(run: RunFigures): QuantityRow[] {
     if (detector < 0) return [];
     const first = layout.fullEnergyFigure + detector * layout.lines;
     const lines = fullEnergyLines(setup);
-    const rows = lines.map((line, i) => row(run, first + i, 'full_energy', '1', layer.name, line?.energyKeV ?? null));
+    const rows = lines.map((line, i) =>
+      row(run, first + i, 'full_energy', '1', layer.name, line?.energyKeV ?? null),
+    );
     const all = lines.reduce((sum, _, i) => sum + sums.figureSum[first + i], 0);
     if (lines.length > 1) {
       const value = estimate(all, all, run.histories, run.historyWeight);

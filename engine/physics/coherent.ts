@@ -74,7 +74,12 @@ function cumulativeAt(table: Float64Array, base: number, q: number): number {
  * @param table tables of all materials
  * @param base first number of the material in `table`
  */
-export function sampleCoherent(table: Float64Array, base: number, energyKeV: number, random: StreamState): number {
+export function sampleCoherent(
+  table: Float64Array,
+  base: number,
+  energyKeV: number,
+  random: StreamState,
+): number {
   const values = base + COHERENT_NODES;
   const guide = values + COHERENT_NODES;
   const qMax = (energyKeV / HC_KEV_ANGSTROM) ** 2;

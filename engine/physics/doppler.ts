@@ -42,7 +42,11 @@ export function fillProfile(pz: Float64Array, j: Float64Array, out: Float64Array
       const from = pz[i] + ((pz[i + 1] - pz[i]) * n) / parts;
       p.push(from);
       cumulative.push(sum);
-      sum += (Math.max(j[i], 1e-300) * Math.exp(slope * (from - pz[i] + (pz[i + 1] - pz[i]) / (2 * parts))) * (pz[i + 1] - pz[i])) / parts;
+      sum +=
+        (Math.max(j[i], 1e-300) *
+          Math.exp(slope * (from - pz[i] + (pz[i + 1] - pz[i]) / (2 * parts))) *
+          (pz[i + 1] - pz[i])) /
+        parts;
     }
   }
   p.push(pz[pz.length - 1]);
@@ -58,7 +62,12 @@ export function fillProfile(pz: Float64Array, j: Float64Array, out: Float64Array
 }
 
 /** Fills one material's alias table (Walker 1977) over `shares`, entries numbered from `base`. */
-export function fillAlias(shares: readonly number[], keep: Float64Array, alias: Int32Array, base: number): void {
+export function fillAlias(
+  shares: readonly number[],
+  keep: Float64Array,
+  alias: Int32Array,
+  base: number,
+): void {
   const count = shares.length;
   const total = shares.reduce((sum, share) => sum + share, 0);
   const scaled = shares.map((share) => (share * count) / total);

@@ -5,11 +5,12 @@
 import { ELECTRON_REST_KEV, PAIR_THRESHOLD_KEV } from '../constants.js';
 import { CELL_LENGTH, type Problem } from '../problem.js';
 import { nextOpenUniform, nextUniform, type StreamState } from '../random.js';
-import { sampleBremsstrahlung } from './bremsstrahlung.js';
+import { MAX_ELECTRON_PHOTONS, sampleBremsstrahlung } from './bremsstrahlung.js';
 import { sampleCoherent } from './coherent.js';
 import { sampleDoppler } from './doppler.js';
 import { comptonEnergyRatio } from './klein-nishina.js';
 import { sampleIncoherent } from './incoherent.js';
+import { samplePhotoelectronCosine } from './photoelectron.js';
 import { relax } from './relaxation.js';
 import { Secondaries } from './secondaries.js';
 
@@ -31,7 +32,8 @@ export class Site {
   readonly random: StreamState = new Float64Array(4);
   /** Draws refused too often by the Doppler sampler (rare oddity, reported). */
   dopplerGivenUp = 0;
-  readonly electronPhotons = new Float64Array(64);
+  /** Energies of one electron's photons, then their cosines to its first direction. */
+  readonly electronPhotons = new Float64Array(2 * MAX_ELECTRON_PHOTONS);
   readonly next = () => nextOpenUniform(this.random);
 }
 
@@ -76,12 +78,20 @@ function absorb(problem: Problem, site: Site, slot: number, cell: number): void 
       if (u < problem.channelTable[at] + problem.channelTable[at + 1] * energyKeV) {
         const shell = problem.channelShell[channel];
         electronKeV = Math.max(0, energyKeV - problem.relaxation.bindingKeV[shell]);
-        emittedKeV = relax(problem.relaxation, shell, energyKeV, problem.cutoffKeV, site.secondaries, site.random);
+        emittedKeV = relax(
+          problem.relaxation,
+          shell,
+          energyKeV,
+          problem.cutoffKeV,
+          site.secondaries,
+          site.random,
+        );
         break;
       }
     }
   }
-  emittedKeV += radiate(problem, site, slot, electronKeV, 1);
+  const photons = brake(problem, site, slot, electronKeV);
+  if (photons > 0) emittedKeV += release(site, photons, samplePhotoelectronCosine(electronKeV, site.random));
   site.energyKeV = 0;
   site.depositedKeV = energyKeV - emittedKeV;
 }
@@ -89,16 +99,29 @@ function absorb(problem: Problem, site: Site, slot: number, cell: number): void 
 /** Incoherent scattering: angle, Doppler-broadened energy, recoil electron. */
 function scatter(problem: Problem, site: Site, slot: number): void {
   const energyKeV = site.energyKeV;
-  const v = sampleIncoherent(problem.incoherent, problem.incoherentBase[slot], energyKeV, nextUniform(site.random));
+  const v = sampleIncoherent(
+    problem.incoherent,
+    problem.incoherentBase[slot],
+    energyKeV,
+    nextUniform(site.random),
+  );
   let scatteredKeV = energyKeV * comptonEnergyRatio(energyKeV, v);
   const shells = problem.dopplerCount[slot];
   if (shells > 0 && energyKeV < problem.dopplerTopKeV) {
-    const broadened = sampleDoppler(problem.doppler, problem.dopplerBase[slot], shells, energyKeV, v, site.random);
+    const broadened = sampleDoppler(
+      problem.doppler,
+      problem.dopplerBase[slot],
+      shells,
+      energyKeV,
+      v,
+      site.random,
+    );
     if (broadened > 0) scatteredKeV = broadened;
     else site.dopplerGivenUp++;
   }
   const electronKeV = energyKeV - scatteredKeV;
-  const emittedKeV = radiate(problem, site, slot, electronKeV, recoilCosine(energyKeV, v));
+  const photons = brake(problem, site, slot, electronKeV);
+  const emittedKeV = photons > 0 ? release(site, photons, recoilCosine(energyKeV, v)) : 0;
   site.v = v;
   if (scatteredKeV >= problem.cutoffKeV) {
     site.energyKeV = scatteredKeV;
@@ -115,8 +138,9 @@ function producePair(problem: Problem, site: Site, slot: number): void {
   const kineticKeV = energyKeV - PAIR_THRESHOLD_KEV;
   // The kinetic energy is shared evenly at random: the Bethe–Heitler spectrum is nearly flat.
   const electronKeV = kineticKeV * nextUniform(site.random);
-  let emittedKeV = radiate(problem, site, slot, electronKeV, 1);
-  emittedKeV += radiate(problem, site, slot, kineticKeV - electronKeV, 1);
+  // At the energies that radiate, both fly forward: their mean angle is about m c² / E.
+  let emittedKeV = release(site, brake(problem, site, slot, electronKeV), 1);
+  emittedKeV += release(site, brake(problem, site, slot, kineticKeV - electronKeV), 1);
   if (problem.cutoffKeV <= ELECTRON_REST_KEV) {
     const cosine = 2 * nextUniform(site.random) - 1;
     site.secondaries.push(ELECTRON_REST_KEV, cosine, 0);
@@ -127,15 +151,23 @@ function producePair(problem: Problem, site: Site, slot: number): void {
   site.depositedKeV = energyKeV - emittedKeV;
 }
 
-/** Bremsstrahlung of an electron (or positron: same yields) that stops here; returns the energy radiated. */
-function radiate(problem: Problem, site: Site, slot: number, electronKeV: number, cosine: number): number {
+/** Slows an electron (or positron: same yields) down to rest; its photons, if any, are in `site.electronPhotons`. */
+function brake(problem: Problem, site: Site, slot: number, electronKeV: number): number {
   const tables = problem.bremsstrahlung[slot];
   if (tables === null || electronKeV <= problem.cutoffKeV) return 0;
-  const count = sampleBremsstrahlung(tables, electronKeV, site.next, site.electronPhotons);
+  return sampleBremsstrahlung(tables, electronKeV, site.next, site.electronPhotons);
+}
+
+/** Sets an electron's photons free; `cosine` is that of the electron's direction. Returns their energy. */
+function release(site: Site, photons: number, cosine: number): number {
+  const { electronPhotons } = site;
   let radiatedKeV = 0;
-  for (let i = 0; i < count; i++) {
-    radiatedKeV += site.electronPhotons[i];
-    site.secondaries.push(site.electronPhotons[i], cosine, 0);
+  for (let i = 0; i < photons; i++) {
+    const own = electronPhotons[MAX_ELECTRON_PHOTONS + i];
+    const sines = Math.sqrt(Math.max(0, (1 - cosine * cosine) * (1 - own * own)));
+    const turned = sines === 0 ? 0 : sines * Math.cos(Math.PI * nextUniform(site.random));
+    radiatedKeV += electronPhotons[i];
+    site.secondaries.push(electronPhotons[i], cosine * own + turned, 0);
   }
   return radiatedKeV;
 }

@@ -1,5 +1,10 @@
 /** A smooth positive function of x sampled once on an even grid of ln x, for builders that ask for it very often. */
-export function logSampled(f: (x: number) => number, low: number, high: number, nodes: number): (x: number) => number {
+export function logSampled(
+  f: (x: number) => number,
+  low: number,
+  high: number,
+  nodes: number,
+): (x: number) => number {
   const start = Math.log(low);
   const step = (Math.log(high) - start) / (nodes - 1);
   const values = Float64Array.from({ length: nodes }, (_, i) => f(Math.exp(start + i * step)));

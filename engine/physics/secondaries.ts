@@ -4,7 +4,7 @@
  */
 
 /** Photons one interaction may set free: fluorescence cascade, two quanta, bremsstrahlung of two particles. */
-export const MAX_SECONDARIES = 128;
+export const MAX_SECONDARIES = 256;
 
 export class Secondaries {
   count = 0;
