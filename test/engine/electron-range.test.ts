@@ -31,7 +31,9 @@ describe('the warning of long electron ranges', () => {
     const { rangeCm, share, warning } = electronRangeWarning({ ...question, thicknessCm: 0.05 });
     expect(Math.abs(rangeCm / published - 1)).toBeLessThan(0.005);
     expect(share).toBeCloseTo(rangeCm / 0.05, 12);
-    expect(warning).toMatchInlineSnapshot(`"layer diode: electrons of 1000 keV (photoelectron of 1000 keV photons) have a range of 0.231 cm, 463 % of its 0.05 cm; they deposit on the spot here but would escape in part, so that its deposited energy and full-energy counts come out too high"`);
+    expect(warning).toMatchInlineSnapshot(
+      `"layer diode: electrons of 1000 keV (photoelectron of 1000 keV photons) have a range of 0.231 cm, 463 % of its 0.05 cm; they deposit on the spot here but would escape in part, so that its deposited energy and full-energy counts come out too high"`,
+    );
   });
 
   it('is silent when the range is 10 % of the thickness or less', () => {
