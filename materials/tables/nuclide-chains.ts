@@ -37,7 +37,7 @@ export const CHAINS: readonly ChainRow[] = [
     members: [...always('Th-232', 'Ra-228', 'Ac-228', 'Th-228'), ...TH228_PROGENY],
     note:
       'the whole chain to Pb-208 in secular equilibrium (older than 40 a, radon kept in); Po-216 and Po-212 have no ' +
-      'line of at least 0.5 per 100 decays',
+      'line of at least 0.5 per 100 decays; the weak lines left out carry some 5 % of the photon energy',
   },
   {
     name: 'U-238+',
@@ -45,7 +45,8 @@ export const CHAINS: readonly ChainRow[] = [
     members: always('U-238', 'Th-234', 'Pa-234m', 'Ra-226+progeny'),
     note:
       'the whole chain to Pb-206 in secular equilibrium, as in undisturbed ore, radon kept in; without U-235 and its ' +
-      'progeny, and without the X rays and weak lines (below 1 per 100) of U-234, Th-230, Pa-234 and Po-210',
+      'progeny, and without the X rays and weak lines (below 1 per 100) of U-234, Th-230, Pa-234 and Po-210; the weak ' +
+      'lines left out carry some 9 % of the photon energy',
   },
   {
     name: 'U-238+Pa-234m',
@@ -130,9 +131,16 @@ export const NUCLIDE_ALIASES: Readonly<Record<string, readonly string[]>> = {
   'Cs-137': ['Cs-137/Ba-137m', 'Cs-137+'],
 };
 
-/** What the evaluated lines of a nuclide already hold of its progeny. */
+/**
+ * What the evaluated lines of a nuclide hold and what they lack. Shares of the photon energy are against the mean
+ * energies of ICRP 107 (values from memory).
+ */
 export const NUCLIDE_NOTES: Readonly<Record<string, string>> = {
-  'Ra-226+progeny': 'with progeny in equilibrium down to Pb-210 and Bi-210, radon kept in',
+  'Ra-226+progeny':
+    'with progeny in equilibrium down to Pb-210 and Bi-210, radon kept in; the weak lines left out carry some 9 % of ' +
+    'the photon energy',
+  'Bi-214': 'the weak lines left out carry some 9 % of the photon energy',
+  'Ac-228': 'the weak lines left out carry some 9 % of the photon energy',
   'Mo-99': 'the 140.5 keV line is that of Tc-99m in equilibrium',
   'Cs-137': 'the lines are those of Ba-137m in equilibrium',
 };

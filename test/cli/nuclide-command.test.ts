@@ -54,7 +54,8 @@ describe('thickset nuclide', () => {
                      Tl-208 (0.3593 per decay)
         note         the whole chain to Pb-208 in secular equilibrium (older than 40
                      a, radon kept in); Po-216 and Po-212 have no line of at least 0.5
-                     per 100 decays
+                     per 100 decays; the weak lines left out carry some 5 % of the
+                     photon energy
         source       Th-232: DDEP evaluation, NPL - 2009
                      Ra-228: DDEP evaluation, IFIN-HH - 2009
                      Ac-228: DDEP evaluation, NPL - 2009

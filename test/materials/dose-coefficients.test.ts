@@ -5,6 +5,7 @@ import {
   doseCoefficient,
   type DoseCoefficientQuantity,
 } from '../../materials/dose-coefficients.js';
+import { findNuclide, nuclideLines } from '../../materials/nuclides.js';
 import { publishedRows } from '../published/csv.js';
 
 const rows = publishedRows('dose-coefficients').map((row) => ({
@@ -109,4 +110,20 @@ describe('dose coefficients', () => {
     for (const quantity of QUANTITIES)
       expect(() => doseCoefficient(quantity, energyKeV)).toThrow(/from 1 keV/);
   });
+});
+
+describe('air kerma rate constants', () => {
+  it.each(publishedRows('air-kerma-constants').map((row) => [row.nuclide, row] as const))(
+    'of %s agree with the published one within 2 %%',
+    (name, row) => {
+      const minimumEnergyKeV = Number(row.from_keV);
+      const pGyCm2 = nuclideLines(findNuclide(name)!, { minimumEnergyKeV }).reduce(
+        (sum, line) => sum + line.perDecay * doseCoefficient('air_kerma', line.energyKeV),
+        0,
+      );
+      // 1 pGy cm² is 100 aGy m²; the sphere at distance r has 4π r².
+      const constant = (100 * pGyCm2) / (4 * Math.PI);
+      expect(Math.abs(constant / Number(row.air_kerma_constant_aGy_m2_per_Bq_s) - 1)).toBeLessThan(0.02);
+    },
+  );
 });

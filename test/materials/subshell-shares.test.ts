@@ -32,10 +32,10 @@ describe('subshell shares', () => {
   });
 
   it.each(publishedRows('k-shell').map((row) => [row.element, Number(row.Z), row] as const))(
-    'of %s (Z = %i) at the K edge agree with the published jump ratio within 2 %%',
+    'of %s (Z = %i) at the K edge agree with the published jump ratio within 0.5 %%',
     (_, z, row) => {
       const share = subshellShares(z, relaxation(z).shells[0].bindingKeV)[0];
-      expect(Math.abs(share / Number(row.K_fraction_at_edge) - 1)).toBeLessThan(0.02);
+      expect(Math.abs(share / Number(row.K_fraction_at_edge) - 1)).toBeLessThan(0.005);
     },
   );
 
