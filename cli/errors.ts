@@ -5,7 +5,7 @@
  * A line reads `file: path: rule, got value (line, column); way out`.
  */
 import { nearestWord } from '../materials/index.js';
-import { clip, listOr, show, showNumber } from './show.js';
+import { clip, listOr, rounded, show, showNumber } from './show.js';
 
 /** How the program ends; `--help` lists the meanings. */
 export const EXIT_CODES = {
@@ -210,6 +210,7 @@ export const complaints = {
       'copy the file there and give its name alone',
     ),
   tooLarge: (limit: string) => new Complaint('too_large', `must not be larger than ${limit}`, null, false),
+  emptyFile: () => new Complaint('missing_key', 'is empty', 'a setup needs at least source and stack', false),
   tooDeep: () => new Complaint('too_large', 'is nested too deeply for a setup', null, false),
   notYaml: (what: string, wayOut: string | null = null) =>
     new Complaint('not_yaml', `is not YAML: ${what}`, wayOut, false),
@@ -234,12 +235,16 @@ export const complaints = {
           'keep one of them',
           false,
         ),
-  count: (least: number, most: number, what: string, given: number) =>
+  count: (least: number, most: number, given: number) =>
     new Complaint(
       'count',
-      given < least ? `needs at least ${least} ${what}` : `takes at most ${most} ${what}`,
+      given < least
+        ? `needs ${entries(least)} or more, has ${given}`
+        : `takes at most ${entries(most)}, has ${given}`,
       null,
+      false,
     ),
+  emptyText: () => new Complaint('bad_text', 'must not be empty', null, false),
   badText: (rule: string, wayOut: string | null = null) => new Complaint('bad_text', rule, wayOut),
   missingUnit: (units: readonly string[], example: string) =>
     new Complaint(
@@ -278,6 +283,13 @@ export const complaints = {
     new Complaint('unknown_name', `unknown ${what} ${show(name)}`, didYouMean(nearest) ?? wayOut, false),
   unknownChoice: (what: string, name: string, known: readonly string[]) =>
     new Complaint('unknown_name', `unknown ${what} ${show(name)}`, nearestOrAll('known', name, known), false),
+  repeated: (name: string, first: Path) =>
+    new Complaint(
+      'duplicate_name',
+      `${show(name)} is given twice, first in ${formatPath(first)}`,
+      'remove one of them',
+      false,
+    ),
   duplicateName: (name: string, first: Path) =>
     new Complaint(
       'duplicate_name',
@@ -309,11 +321,15 @@ export const complaints = {
   tooManyBins: (bins: number, limit: number) =>
     new Complaint(
       'count',
-      `asks for ${showNumber(bins)} energy bins over all spectra, the limit is ${showNumber(limit)}`,
+      `asks for ${showNumber(rounded(bins))} energy bins over all spectra, the limit is ${showNumber(limit)}`,
       'take wider bins',
       false,
     ),
 } as const;
+
+function entries(count: number): string {
+  return count === 1 ? '1 entry' : `${count} entries`;
+}
 
 function nearestOrAll(label: string, word: string, known: readonly string[]): string {
   return didYouMean(nearestWord(word, known)) ?? `${label} here: ${known.join(', ')}`;

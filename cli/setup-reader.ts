@@ -63,7 +63,7 @@ export function parseSetup(text: string, origin: SetupOrigin = {}): CheckedSetup
   const raw = readYaml(text, problems);
   if (raw === undefined) problems.throwIfAny();
   if (raw === null) {
-    problems.add([], complaints.missingKey('a setup needs at least source and stack'));
+    problems.add([], complaints.emptyFile());
     problems.throwIfAny();
   }
   return check(raw, origin, problems);

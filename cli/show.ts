@@ -28,6 +28,7 @@ export function showValue(value: unknown): string {
   if (typeof value === 'string') return value.trim() === '' ? 'an empty text' : clip(value);
   if (Array.isArray(value)) return value.length === 0 ? 'an empty list' : 'a list';
   if (typeof value === 'object') return 'a mapping';
+  if (typeof value === 'number') return showNumber(value);
   return clip(String(value));
 }
 
@@ -36,6 +37,20 @@ export function showNumber(value: number): string {
   const size = Math.abs(value);
   const text = size !== 0 && (size >= 1e6 || size < 1e-3) ? value.toExponential() : String(value);
   return text.replace('e+', 'e');
+}
+
+/** Four figures are enough to recognise a number by. */
+export function rounded(value: number): number {
+  return Number(value.toPrecision(4));
+}
+
+/** A value as it may be written in a setup file: `{kind: beam, energy: 661.7 keV}`. */
+export function showFlow(value: unknown): string {
+  if (Array.isArray(value)) return `[${value.map(showFlow).join(', ')}]`;
+  if (typeof value !== 'object' || value === null) return String(value);
+  return `{${Object.entries(value)
+    .map(([key, inner]) => `${key}: ${showFlow(inner)}`)
+    .join(', ')}}`;
 }
 
 /** `a, b or c`. */

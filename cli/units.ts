@@ -137,7 +137,9 @@ function plainUnit(unit: string): string {
 export function parseQuantity(raw: unknown, dimensions: readonly Dimension[]): Quantity | Complaint {
   const units = unitNames(dimensions);
   const example = unitExample(dimensions);
-  if (typeof raw === 'number') return complaints.missingUnit(units, example);
+  if (typeof raw === 'number') {
+    return Number.isFinite(raw) ? complaints.missingUnit(units, example) : complaints.notFinite();
+  }
   if (typeof raw !== 'string') return complaints.notAQuantity(units, example);
   const text = raw.trim();
   if (/^[-+]?\.?(nan|inf|infinity)\b/i.test(text)) return complaints.notFinite();

@@ -142,6 +142,15 @@ export function choose<const T extends string>(
   return complaints.unknownChoice(what, raw, words);
 }
 
+/** A list; its bounds stand in the metadata, where they can be read back. */
+export function list<S extends z.ZodType>(item: S, least: number, most: number, described: Described & Meta) {
+  return z
+    .array(item)
+    .min(least)
+    .max(most)
+    .meta({ minItems: least, maxItems: most, ...describe(described) });
+}
+
 /** A short text on one line. */
 export function text(longest: number, described: Described) {
   return field({ type: 'string', minLength: 1, maxLength: longest, ...describe(described) }, (raw) =>
@@ -154,7 +163,7 @@ export function readText(raw: unknown, longest: number): string | Complaint {
     return complaints.wrongType('a text', 'put it in quotes');
   if (typeof raw !== 'string') return complaints.wrongType('a text');
   const trimmed = raw.trim();
-  if (trimmed === '') return complaints.badText('must not be empty');
+  if (trimmed === '') return complaints.emptyText();
   if (trimmed.length > longest) return complaints.badText(`must have at most ${longest} characters`);
   if (hasUnsafeCharacters(trimmed))
     return complaints.badText('must not hold line breaks or control characters');

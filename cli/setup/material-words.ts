@@ -30,7 +30,7 @@ export class MaterialWords {
     this.#problems = problems;
     const own = Object.entries(keys);
     if (own.length > MAX_MATERIALS) {
-      problems.add(['materials'], complaints.count(0, MAX_MATERIALS, 'materials', own.length));
+      problems.add(['materials'], complaints.count(0, MAX_MATERIALS, own.length));
     }
     for (const [name, given] of own)
       this.#own.set(name, given === undefined ? null : this.#make(name, given));
@@ -77,7 +77,7 @@ export class MaterialWords {
 
   #unknown(name: string, cause: MaterialError): Complaint {
     if (cause.code === 'no_density') return complaints.formulaWithoutDensity(name);
-    if (cause.code !== 'unknown_material' && cause.code !== 'unknown_element') return fromMaterials(cause);
+    if (cause.code !== 'unknown_material') return fromMaterials(cause);
     const near =
       nearestWord(name, [...this.#own.keys(), VACUUM]) ?? nearestMaterialName(name) ?? cause.suggestion;
     return complaints.unknownName(

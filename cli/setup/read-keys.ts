@@ -5,6 +5,7 @@
  */
 import * as z from 'zod';
 import { Complaint, complaints, type Path } from '../errors.js';
+import { showFlow } from '../show.js';
 import type { Quantity } from '../units.js';
 import { readText } from './fields.js';
 import { MAX_NAME } from './limits.js';
@@ -31,7 +32,13 @@ export function readKeys<S extends z.ZodType>(
   return new KeyReader(problems).read(schema, raw, []) as Partially<z.output<S>> | undefined;
 }
 
-export function isMapping(value: unknown): value is Readonly<Record<string, unknown>> {
+/** What `list` leaves in the metadata. */
+interface ListBounds {
+  readonly minItems?: number;
+  readonly maxItems?: number;
+}
+
+function isMapping(value: unknown): value is Readonly<Record<string, unknown>> {
   return typeof value === 'object' && value !== null && !Array.isArray(value);
 }
 
@@ -111,7 +118,7 @@ class KeyReader {
 
   #missing(schema: z.core.$ZodType, path: Path): void {
     const { examples } = z.globalRegistry.get(schema) ?? {};
-    const example = Array.isArray(examples) ? `, as in ${path.at(-1)}: ${String(examples[0])}` : '';
+    const example = Array.isArray(examples) ? `, as in ${path.at(-1)}: ${showFlow(examples[0])}` : '';
     this.#problems.add(path, complaints.missingKey(`add it${example}`));
   }
 
@@ -120,11 +127,9 @@ class KeyReader {
       this.#problems.add(path, complaints.wrongType('a list'), raw ?? null);
       return undefined;
     }
-    const { minimum, maximum } = schema._zod.bag as { minimum?: number; maximum?: number };
-    const least = minimum ?? 0;
-    const most = maximum ?? Infinity;
+    const { minItems: least = 0, maxItems: most = Infinity } = (schema.meta() ?? {}) as ListBounds;
     if (raw.length < least || raw.length > most) {
-      this.#problems.add(path, complaints.count(least, most, least === 1 ? 'entry' : 'entries', raw.length));
+      this.#problems.add(path, complaints.count(least, most, raw.length));
       if (raw.length > most) return undefined;
     }
     return raw.map((item, index) => this.read(schema.element, item ?? null, [...path, index]));

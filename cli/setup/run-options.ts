@@ -64,7 +64,7 @@ function reportPulseHeights(keys: RunKeys, { stack }: RunNeeds, problems: Proble
     const rule = `deep transport gives no pulse heights, but ${stack.detectors[0].name ?? 'a layer'} is a detector`;
     problems.add(['run', 'transport'], complaints.contradiction(rule, `remove detector, or ${way}`));
   } else if (quantity === 'interacting' || kind === 'detector') {
-    const rule = `deep transport gives no ${quantity}`;
+    const rule = `deep transport cannot give ${quantity}`;
     problems.add(['run', 'transport'], complaints.contradiction(rule, way));
   }
 }

@@ -2,9 +2,26 @@
 import * as z from 'zod';
 import { MAX_LAYERS } from '../../engine/setup.js';
 import { Complaint, complaints } from '../errors.js';
-import { parseNumber, parseQuantity, quantityPattern, type Dimension, type Quantity } from '../units.js';
-import { field, quantity, rangeComplaint, share, text, type Range } from './fields.js';
-import { DENSITY, ENERGY, MAX_MATERIALS, MAX_NAME, MAX_TEXT, MAX_WINDOWS, SIZE } from './limits.js';
+import {
+  parseNumber,
+  parseQuantity,
+  quantityPattern,
+  unitExample,
+  type Dimension,
+  type Quantity,
+} from '../units.js';
+import { field, list, quantity, rangeComplaint, share, text, type Range } from './fields.js';
+import {
+  DENSITY,
+  ENERGY,
+  MAX_LENGTH_CM,
+  MIN_LENGTH_CM,
+  MAX_MATERIALS,
+  MAX_NAME,
+  MAX_TEXT,
+  MAX_WINDOWS,
+  SIZE,
+} from './limits.js';
 
 /** A width that is known at one energy. */
 export interface WidthAtEnergy {
@@ -64,6 +81,7 @@ function coefficient(dimension: Dimension, range: Range, description: string) {
   const meta = {
     anyOf: [{ type: 'number' }, { type: 'string', pattern: quantityPattern([dimension]) }],
     description,
+    examples: [unitExample([dimension])],
   };
   return field(meta, (raw) => {
     const plain = parseNumber(raw);
@@ -114,7 +132,7 @@ const detectorSchema = z
           readWidthAtEnergy,
         ),
         formulaSchema,
-        z.array(widthRowSchema).min(2).max(1000).meta({ description: 'Widths at several energies.' }),
+        list(widthRowSchema, 2, 1000, { description: 'Widths at several energies.' }),
       ])
       .meta({
         description: 'Full width at half maximum of a peak; without it the spectrum is not broadened.',
@@ -125,17 +143,16 @@ const detectorSchema = z
       { atLeast: 0, atMost: 20_000 },
       { description: 'Smaller pulses are not registered.', examples: ['10 keV'] },
     ).optional(),
-    windows: z
-      .array(windowSchema)
-      .min(1)
-      .max(MAX_WINDOWS)
-      .meta({ description: 'Named energy windows in which counts are given.' })
-      .optional(),
+    windows: list(windowSchema, 1, MAX_WINDOWS, {
+      description: 'Named energy windows in which counts are given.',
+    }).optional(),
   })
   .meta({
     description: 'Makes the layer a detector, with a pulse-height spectrum. {} is one without broadening.',
   });
 
+/** Bounds of a thickness in cm. */
+export const THICKNESS_CM: Range = { moreThan: 0, atLeast: MIN_LENGTH_CM, atMost: MAX_LENGTH_CM };
 const THICKNESS: readonly Dimension[] = ['length', 'mass_per_area'];
 
 const layerSchema = z.strictObject({
@@ -155,8 +172,12 @@ const layerSchema = z.strictObject({
     },
     (raw) => {
       const parsed = parseQuantity(raw, THICKNESS);
-      if (parsed instanceof Complaint || parsed.value > 0) return parsed;
-      return complaints.outOfRange('more than 0');
+      if (parsed instanceof Complaint) return parsed;
+      // What a mass per area comes to is known when the density is.
+      return (
+        rangeComplaint(parsed.value, parsed.dimension === 'length' ? THICKNESS_CM : { moreThan: 0 }, 'cm') ??
+        parsed
+      );
     },
   ),
   density: quantity(
@@ -171,11 +192,10 @@ const layerSchema = z.strictObject({
   detector: detectorSchema.optional(),
 });
 
-export const stackSchema = z
-  .array(layerSchema)
-  .min(1)
-  .max(MAX_LAYERS)
-  .meta({ description: 'Layers from the source side outwards.' });
+export const stackSchema = list(layerSchema, 1, MAX_LAYERS, {
+  description: 'Layers from the source side outwards.',
+  examples: [[{ material: 'lead', thickness: '5 cm' }]],
+});
 
 export const extentSchema = z
   .strictObject({

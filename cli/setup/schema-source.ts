@@ -1,6 +1,6 @@
 /** The `source` section: where photons start, in which direction, and with what energies. */
 import * as z from 'zod';
-import { choice, quantity, share, text, wholeNumber } from './fields.js';
+import { choice, list, quantity, share, text, wholeNumber } from './fields.js';
 import { DISTANCE, ENERGY, MAX_GRID_ENERGIES, MAX_LINES, MAX_NAME, MAX_TEXT, SIZE } from './limits.js';
 
 /** The keys of which a source has exactly one. */
@@ -29,12 +29,7 @@ const energiesSchema = z
 
 const emission = {
   energy: quantity('energy', ENERGY, { description: 'One energy for all photons.' }).optional(),
-  lines: z
-    .array(lineSchema)
-    .min(1)
-    .max(MAX_LINES)
-    .meta({ description: 'Several energies with their weights.' })
-    .optional(),
+  lines: list(lineSchema, 1, MAX_LINES, { description: 'Several energies with their weights.' }).optional(),
   spectrum: text(MAX_TEXT, {
     description:
       'CSV file with the columns energy_kev and relative photons, in the folder of the setup file or below it.',
@@ -76,35 +71,43 @@ function shape<const K extends string, S extends z.ZodRawShape>(kind: K, descrip
     .meta({ description, ...oneEmission });
 }
 
-export const sourceSchema = z.discriminatedUnion('kind', [
-  shape('beam', 'Parallel photons onto the front face.', {
-    angle: quantity(
-      'angle',
-      { atLeast: 0, lessThan: 90 },
-      { description: 'Angle from the normal of the front face.', default: '0 deg' },
-    ).optional(),
-    diameter: quantity('length', DISTANCE, {
-      description:
-        'Diameter of the beam; without it all photons run along one line that meets the axis at the front face.',
-      examples: ['5 mm'],
-    }).optional(),
-  }),
-  shape('diffuse', 'Photons from the whole half space in front.', {
-    law: choice('law', ['isotropic', 'uniform_solid_angle'], {
-      description:
-        'isotropic: constant radiance, so that the current goes with the cosine; uniform_solid_angle: all directions alike.',
-      default: 'isotropic',
-    }).optional(),
-  }),
-  shape('point', 'A point in front of the stack that emits in all directions.', {
-    distance: quantity('length', DISTANCE, { description: 'From the front face.', examples: ['25 cm'] }),
-    offset: quantity('length', DISTANCE, { description: 'Away from the axis.', default: '0 cm' }).optional(),
-  }),
-  shape('disc', 'A disc around the axis, parallel to the front face, that emits in all directions.', {
-    distance: quantity('length', DISTANCE, { description: 'From the front face.', examples: ['10 cm'] }),
-    radius: quantity('length', SIZE, { description: 'Radius of the disc.', examples: ['2.5 cm'] }),
-  }),
-  shape('embedded', 'Uniform in a layer, in all directions.', {
-    layer: text(MAX_NAME, { description: 'Name of the layer.' }),
-  }),
-]);
+export const sourceSchema = z
+  .discriminatedUnion('kind', [
+    shape('beam', 'Parallel photons onto the front face.', {
+      angle: quantity(
+        'angle',
+        { atLeast: 0, lessThan: 90 },
+        { description: 'Angle from the normal of the front face.', default: '0 deg' },
+      ).optional(),
+      diameter: quantity('length', DISTANCE, {
+        description:
+          'Diameter of the beam; without it all photons run along one line that meets the axis at the front face.',
+        examples: ['5 mm'],
+      }).optional(),
+    }),
+    shape('diffuse', 'Photons from the whole half space in front.', {
+      law: choice('law', ['isotropic', 'uniform_solid_angle'], {
+        description:
+          'isotropic: constant radiance, so that the current goes with the cosine; uniform_solid_angle: all directions alike.',
+        default: 'isotropic',
+      }).optional(),
+    }),
+    shape('point', 'A point in front of the stack that emits in all directions.', {
+      distance: quantity('length', DISTANCE, { description: 'From the front face.', examples: ['25 cm'] }),
+      offset: quantity('length', DISTANCE, {
+        description: 'Away from the axis.',
+        default: '0 cm',
+      }).optional(),
+    }),
+    shape('disc', 'A disc around the axis, parallel to the front face, that emits in all directions.', {
+      distance: quantity('length', DISTANCE, { description: 'From the front face.', examples: ['10 cm'] }),
+      radius: quantity('length', SIZE, { description: 'Radius of the disc.', examples: ['2.5 cm'] }),
+    }),
+    shape('embedded', 'Uniform in a layer, in all directions.', {
+      layer: text(MAX_NAME, { description: 'Name of the layer.', examples: ['soil'] }),
+    }),
+  ])
+  .meta({
+    description: 'Where photons start and with what energies.',
+    examples: [{ kind: 'beam', energy: '661.7 keV' }],
+  });

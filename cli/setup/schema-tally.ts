@@ -1,6 +1,6 @@
 /** The `tally`, `physics` and `run` sections: what is scored, which physics is on, and when to stop. */
 import * as z from 'zod';
-import { choice, quantity, share, text, trueOrFalse, wholeNumber } from './fields.js';
+import { choice, list, quantity, share, text, trueOrFalse, wholeNumber } from './fields.js';
 import * as limits from './limits.js';
 
 export const DOSE_QUANTITIES = ['air_kerma', 'ambient_dose', 'effective_dose_ap'] as const;
@@ -26,12 +26,12 @@ const energyBinsSchema = z
       description: 'With width or count: upper end; default: just above the highest source energy.',
       examples: ['3 MeV'],
     }).optional(),
-    edges: z
-      .array(quantity('energy', { atLeast: 0, atMost: 40_000 }, { description: 'Edge of a bin.' }))
-      .min(2)
-      .max(limits.MAX_BINS)
-      .meta({ description: 'All edges, ascending, from 0 keV to above the highest source energy.' })
-      .optional(),
+    edges: list(
+      quantity('energy', { atLeast: 0, atMost: 40_000 }, { description: 'Edge of a bin.' }),
+      2,
+      limits.MAX_BINS,
+      { description: 'All edges, ascending, from 0 keV to above the highest source energy.' },
+    ).optional(),
   })
   .meta({
     description: 'Energy bins of all spectra. Default: 1 keV (0.1 keV below 100 keV, 10 keV above 5 MeV).',
@@ -61,19 +61,18 @@ const dosePointSchema = z
 export const tallySchema = z
   .strictObject({
     energy_bins: energyBinsSchema.optional(),
-    dose: z
-      .array(choice('dose quantity', DOSE_QUANTITIES, { description: 'A dose quantity.' }))
-      .meta({ description: 'Dose quantities at the far face and at the dose points.', uniqueItems: true })
-      .optional(),
-    dose_points: z
-      .array(dosePointSchema)
-      .min(1)
-      .max(limits.MAX_DOSE_POINTS)
-      .meta({ description: 'Places outside the stack.' })
-      .optional(),
+    dose: list(
+      choice('dose quantity', DOSE_QUANTITIES, { description: 'A dose quantity.' }),
+      0,
+      DOSE_QUANTITIES.length,
+      { description: 'Dose quantities at the far face and at the dose points.', uniqueItems: true },
+    ).optional(),
+    dose_points: list(dosePointSchema, 1, limits.MAX_DOSE_POINTS, {
+      description: 'Places outside the stack.',
+    }).optional(),
     depth_profile: z
       .strictObject({
-        layer: text(limits.MAX_NAME, { description: 'Name of the layer.' }),
+        layer: text(limits.MAX_NAME, { description: 'Name of the layer.', examples: ['wall'] }),
         bins: wholeNumber(1, limits.MAX_DEPTH_BINS, {
           description: 'Number of slices.',
           default: limits.DEFAULTS.depthBins,
@@ -129,6 +128,7 @@ const untilSchema = z
   .strictObject({
     quantity: choice('quantity', Object.keys(QUANTITIES) as QuantityName[], {
       description: 'Figure to watch.',
+      examples: ['transmitted'],
     }),
     layer: text(limits.MAX_NAME, {
       description: 'Layer or dose point of the figure; default: the first that has it.',

@@ -3,14 +3,13 @@ import type { Detector, EnergyWindow, Extent, Layer, Resolution } from '../../en
 import { nearestWord, type Material } from '../../materials/index.js';
 import { complaints, type Path } from '../errors.js';
 import type { SetupKeys } from '../setup-schema.js';
-import { showNumber } from '../show.js';
+import { rounded, showNumber } from '../show.js';
 import type { Quantity } from '../units.js';
-import { MAX_LENGTH_CM, MIN_LENGTH_CM } from './limits.js';
 import { VACUUM, type MaterialWords } from './material-words.js';
 import type { ProblemList } from './problem-list.js';
 import type { Partially } from './read-keys.js';
 import { rangeComplaint } from './fields.js';
-import { widthKeV } from './schema-layer.js';
+import { THICKNESS_CM, widthKeV } from './schema-layer.js';
 
 type LayerKeys = Partially<SetupKeys['stack'][number]>;
 type DetectorKeys = NonNullable<LayerKeys['detector']>;
@@ -124,9 +123,9 @@ function makeThickness(
   }
   if (dimension === 'mass_per_area' && material === undefined) return null;
   const thicknessCm = dimension === 'length' ? value : value / (material as Material).densityGPerCm3;
-  const broken = rangeComplaint(thicknessCm, { atLeast: MIN_LENGTH_CM, atMost: MAX_LENGTH_CM }, 'cm');
+  const broken = rangeComplaint(thicknessCm, THICKNESS_CM, 'cm');
   if (broken === null) return thicknessCm;
-  problems.add(path, broken, `${thicknessCm} cm`);
+  problems.add(path, broken, `${showNumber(rounded(thicknessCm))} cm by its mass per area`);
   return null;
 }
 
@@ -217,7 +216,7 @@ export function reportNegativeWidths(stack: StackDraft, highestKeV: number, prob
     const { a, b, c } = resolution;
     const fwhmKeV = a + b * Math.sqrt(highestKeV + c * highestKeV ** 2);
     if (fwhmKeV > 0) return;
-    const rule = `gives a width of ${showNumber(fwhmKeV)} keV at the highest source energy, ${showNumber(highestKeV)} keV`;
+    const rule = `gives a width of ${showNumber(rounded(fwhmKeV))} keV at the highest source energy, ${showNumber(highestKeV)} keV`;
     problems.add(
       ['stack', index, 'detector', 'fwhm'],
       complaints.contradiction(rule, 'a, b and c are in units of keV'),

@@ -51,7 +51,7 @@ function makeDose(quantities: readonly (DoseQuantity | undefined)[], problems: P
     if (quantity === undefined) return [];
     const taken = first.get(quantity);
     if (taken === undefined) first.set(quantity, index);
-    else problems.add(['tally', 'dose', index], complaints.duplicateName(quantity, ['tally', 'dose', taken]));
+    else problems.add(['tally', 'dose', index], complaints.repeated(quantity, ['tally', 'dose', taken]));
     return [quantity];
   });
 }

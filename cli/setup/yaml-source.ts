@@ -44,7 +44,7 @@ export function readYaml(text: string, problems: ProblemList): unknown {
     // The library's own search for repeated keys takes quadratic time; TreeReader does it in linear time.
     uniqueKeys: false,
     prettyErrors: false,
-    logLevel: 'silent',
+    logLevel: 'error',
     lineCounter: lines,
   });
   const reader = new TreeReader(lines, problems);
@@ -70,6 +70,11 @@ const SYNTAX_WORDS: Readonly<Record<string, { what: string; wayOut: string | nul
     what: 'the file holds more than one document',
     wayOut: 'remove the lines "---" and "..."',
   },
+  BAD_INDENT: {
+    what: 'wrong indentation, or a bracket that is not closed above',
+    wayOut: 'indent all keys of a section alike',
+  },
+  MISSING_CHAR: { what: 'a quote, a bracket or a comma is missing', wayOut: null },
   BLOCK_AS_IMPLICIT_KEY: {
     what: 'a second "key:" where a value should be',
     wayOut: 'begin a new line with the indentation of its neighbours, or put the value in quotes',
@@ -87,14 +92,22 @@ class TreeReader {
 
   /** Reports what is no YAML, or a newer or older YAML; true if the tree can be read. */
   reportSyntax(document: Document.Parsed): boolean {
+    let last = -1;
     for (const error of document.errors) {
+      // One slip often breaks several rules at one place; the first says most.
+      if (error.pos[0] === last) continue;
+      last = error.pos[0];
       const words = SYNTAX_WORDS[error.code];
       const complaint = complaints.notYaml(words?.what ?? clip(error.message, 200), words?.wayOut ?? null);
       this.#problems.addAt([], complaint, this.#place(error.pos[0]));
     }
     const yaml = document.directives.yaml;
     if (yaml.explicit === true && yaml.version !== '1.2') {
-      this.#problems.add([], complaints.forbiddenYaml(`YAML ${yaml.version} is`, 'remove the line "%YAML"'));
+      this.#problems.addAt(
+        [],
+        complaints.forbiddenYaml(`YAML ${yaml.version} is`, 'remove the line "%YAML"'),
+        { line: 1, column: 1 },
+      );
     }
     return document.errors.length === 0;
   }
