@@ -35,7 +35,7 @@ function integrated(z: number, density: (cosine: number) => number): number {
   return (Math.PI * ELECTRON_RADIUS_CM ** 2 * sum * AVOGADRO) / ATOMIC_WEIGHT[z];
 }
 
-// The tabulated F is nonrelativistic, XCOM integrates a relativistic one: below it by 2 % for iron, 12 % for lead.
+// The tabulated F is lower than the relativistic one XCOM integrates: by 2 % in iron, 12 % in lead at 1 MeV.
 const coherentTolerance = (z: number) => 0.006 + 0.12 * (z / 82) ** 1.5;
 
 const transfer = (energyKeV: number, cosine: number) =>
