@@ -158,7 +158,8 @@ function readFileOrComplaint(path: string): string | Complaint {
       const status = fstatSync(file);
       if (!status.isFile()) return complaints.notAFile();
       if (status.size > MAX_SETUP_BYTES) return complaints.tooLarge(MAX_SETUP_SIZE);
-      return new TextDecoder('utf-8', { fatal: true }).decode(readFileSync(file));
+      // The mark of byte order is kept: the text is to be the very content of the file.
+      return new TextDecoder('utf-8', { fatal: true, ignoreBOM: true }).decode(readFileSync(file));
     } finally {
       closeSync(file);
     }

@@ -4,6 +4,7 @@
  * still be checked and everything wrong is told at once.
  */
 import * as z from 'zod';
+import { nearestWord } from '../../materials/index.js';
 import { Complaint, complaints, type Path } from '../errors.js';
 import { showFlow } from '../show.js';
 import type { Quantity } from '../units.js';
@@ -90,21 +91,24 @@ class KeyReader {
     const known = Object.keys(schema.shape);
     const mapping = this.#mapping(raw, path, known);
     if (mapping === undefined) return undefined;
-    for (const key of Object.keys(mapping)) {
-      if (!Object.hasOwn(schema.shape, key)) this.#unknownKey(key, path, known, null);
-    }
-    return this.#readShape(schema, mapping, path);
+    const strangers = Object.keys(mapping).filter((key) => !Object.hasOwn(schema.shape, key));
+    for (const key of strangers) this.#unknownKey(key, path, known, null);
+    return this.#readShape(schema, mapping, path, meantBy(strangers, known));
   }
 
   #readShape(
     schema: z.ZodObject,
     mapping: Readonly<Record<string, unknown>>,
     path: Path,
+    misspelt: ReadonlySet<string>,
   ): Record<string, unknown> {
     const result: Record<string, unknown> = {};
     for (const [key, inner] of Object.entries(schema.shape)) {
       if (Object.hasOwn(mapping, key) && mapping[key] !== undefined) {
         result[key] = this.read(inner, mapping[key], [...path, key]);
+      } else if (misspelt.has(key)) {
+        // Given, though not by its name: to call it missing as well would say one mistake twice.
+        result[key] = undefined;
       } else if (!(inner instanceof z.ZodOptional)) {
         this.#missing(inner, [...path, key]);
       }
@@ -161,14 +165,15 @@ class KeyReader {
       this.#reportKind(mapping.kind, kinds, [...path, 'kind']);
       return this.#readCommon([...options.values()], mapping, path);
     }
-    for (const key of Object.keys(mapping)) {
-      if (Object.hasOwn(chosen.shape, key)) continue;
+    const known = Object.keys(chosen.shape);
+    const strangers = Object.keys(mapping).filter((key) => !Object.hasOwn(chosen.shape, key));
+    for (const key of strangers) {
       const owners = kinds.filter((kind) => Object.hasOwn(options.get(kind)!.shape, key));
       const elsewhere =
         owners.length === 0 ? null : `belongs to kind ${owners.join(' or ')}, not to ${String(mapping.kind)}`;
-      this.#unknownKey(key, path, Object.keys(chosen.shape), elsewhere);
+      this.#unknownKey(key, path, known, elsewhere);
     }
-    return this.#readShape(chosen, mapping, path);
+    return this.#readShape(chosen, mapping, path, meantBy(strangers, known));
   }
 
   #reportKind(kind: unknown, kinds: readonly string[], path: Path): void {
@@ -194,6 +199,11 @@ class KeyReader {
     }
     return result;
   }
+}
+
+/** The known keys that misspelt ones stand for. */
+function meantBy(strangers: readonly string[], known: readonly string[]): Set<string> {
+  return new Set(strangers.flatMap((key) => nearestWord(key, known) ?? []));
 }
 
 /** Unions here are told apart by the form of the value: a list, a mapping or a scalar. */

@@ -28,7 +28,8 @@ const MAX_PARSER_STACK = 60;
 const FORBIDDEN_KEYS = new Set(['__proto__', 'constructor', 'prototype']);
 
 /** The value of the text; undefined if it cannot be read, and `problems` says why. */
-export function readYaml(text: string, problems: ProblemList): unknown {
+export function readYaml(fileText: string, problems: ProblemList): unknown {
+  const text = fileText.replace(/^\ufeff/, '');
   if (text.length > MAX_SETUP_BYTES) {
     problems.add([], complaints.tooLarge(MAX_SETUP_SIZE));
     return undefined;
