@@ -136,7 +136,8 @@ class KeyReader {
       this.#problems.add(path, complaints.count(least, most, raw.length));
       if (raw.length > most) return undefined;
     }
-    return raw.map((item, index) => this.read(schema.element, item ?? null, [...path, index]));
+    // Unlike map, from does not skip holes.
+    return Array.from(raw, (item, index) => this.read(schema.element, item ?? null, [...path, index]));
   }
 
   #readRecord(schema: z.ZodRecord, raw: unknown, path: Path): unknown {
