@@ -47,7 +47,7 @@ function formFactor(z: number): (x: number) => number {
   return cached(formFactors, z, () => logSampled((x) => formFactorAt(z, x), 1e-3, 2000, 900));
 }
 
-interface ScatteringTables {
+export interface ScatteringTables {
   readonly incoherent: Float64Array;
   readonly incoherentBase: Int32Array;
   readonly coherent: Float64Array;
@@ -108,7 +108,7 @@ function scatterers(constituents: readonly Constituent[]): Scatterer[] {
   }));
 }
 
-interface Doppler {
+export interface Doppler {
   readonly dopplerTopKeV: number;
   readonly doppler: DopplerTables;
   readonly dopplerBase: Int32Array;
@@ -172,7 +172,7 @@ function elementsOf(slots: readonly Slot[]): number[] {
   return [...new Set(all)].sort((a, b) => a - b);
 }
 
-interface Channels {
+export interface Channels {
   readonly channelBase: Int32Array;
   readonly channelCount: Int32Array;
   readonly channelShell: Int32Array;
@@ -251,15 +251,9 @@ function shellShares(slot: Slot, nodesKeV: Float64Array) {
   };
 }
 
-/** Thick-target bremsstrahlung tables per slot; null where nothing radiates. */
-export function makeRadiation(
-  slots: readonly Slot[],
-  topKeV: number,
-  physics: Physics,
-): (BremsstrahlungTables | null)[] {
-  return slots.map((slot) =>
-    physics.bremsstrahlung && slot.constituents.length > 0
-      ? makeBremsstrahlungTables(slot, topKeV, physics.cutoffKeV)
-      : null,
-  );
+/** Thick-target bremsstrahlung tables of a slot; null where nothing radiates. */
+export function makeRadiation(slot: Slot, topKeV: number, physics: Physics): BremsstrahlungTables | null {
+  return physics.bremsstrahlung && slot.constituents.length > 0
+    ? makeBremsstrahlungTables(slot, topKeV, physics.cutoffKeV)
+    : null;
 }

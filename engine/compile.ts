@@ -1,9 +1,10 @@
 /** Setup in, compiled problem out. */
-import { slotsOf, gridOf, makeCells } from './compile-slots.js';
-import { makeChannels, makeDoppler, makeScatteringTables, makeRadiation } from './compile-physics.js';
+import { slotsOf } from './compile-slots.js';
+import { tablesOf } from './compile-tables.js';
+import { PAIR_THRESHOLD_KEV } from './constants.js';
 import { makeEmissionTable, topEnergyKeV } from './emission.js';
 import { sharedDoubles, type Problem } from './problem.js';
-import type { Setup } from './setup.js';
+import type { Physics, Setup } from './setup.js';
 import { makeTallyLayout } from './tally-layout.js';
 
 /** Compiles a checked setup. */
@@ -12,13 +13,12 @@ export function compile(setup: Setup): Problem {
   const emission = makeEmissionTable(source.emission);
   const topKeV = topEnergyKeV(emission);
   const { slots, slotOfLayer } = slotsOf(stack);
-  const grid = gridOf(slots, topKeV);
+  const tables = tablesOf(slots, topKeV, physics);
   return {
     kernel: 'slab',
     seed: setup.seed,
-    grid,
-    cellCount: grid.nodesKeV.length - 1,
-    cells: makeCells(slots, grid, physics),
+    ...tables,
+    cellCount: tables.grid.nodesKeV.length - 1,
     layers: stack.length,
     boundariesCm: boundaries(setup),
     slotOfLayer,
@@ -28,13 +28,15 @@ export function compile(setup: Setup): Problem {
     emission,
     historyWeight: source.shape.kind === 'point' || source.shape.kind === 'disc' ? 0.5 : 1,
     cutoffKeV: physics.cutoffKeV,
-    plain: !physics.doppler && !physics.fluorescence && !physics.bremsstrahlung,
-    ...makeScatteringTables(slots, topKeV, physics),
-    ...makeDoppler(slots, physics),
-    ...makeChannels(slots, grid, physics),
-    bremsstrahlung: makeRadiation(slots, topKeV, physics),
+    plain: isPlain(physics, topKeV),
     tally: makeTallyLayout(setup),
   };
+}
+
+/** Whether nothing but absorption and incoherent scattering can happen, without secondaries or broadening. */
+function isPlain(physics: Physics, topKeV: number): boolean {
+  const pair = physics.pair && topKeV > PAIR_THRESHOLD_KEV;
+  return !physics.coherent && !pair && !physics.doppler && !physics.fluorescence && !physics.bremsstrahlung;
 }
 
 function boundaries(setup: Setup): Float64Array {

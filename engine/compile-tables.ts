@@ -1,0 +1,98 @@
+/**
+ * Everything in a problem that depends on materials, energies and physics but not on thicknesses or densities, kept
+ * from one problem to the next: the points of a sweep mostly differ in what costs nothing to compile.
+ *
+ * Tables end at a step of half an octave above the highest source energy, so that an energy scan needs few of them.
+ * The step follows from the setup alone: a problem has the same tables whatever was compiled before it.
+ */
+import { BoundedCache } from './bounded-cache.js';
+import {
+  makeChannels,
+  makeDoppler,
+  makeRadiation,
+  makeScatteringTables,
+  type Channels,
+  type Doppler,
+  type ScatteringTables,
+} from './compile-physics.js';
+import { compositionKey, gridOf, makeCells, type Slot } from './compile-slots.js';
+import type { EnergyGrid } from './energy-grid.js';
+import type { BremsstrahlungTables } from './physics/bremsstrahlung.js';
+import { CELL_LENGTH, sharedDoubles } from './problem.js';
+import { MAX_ENERGY_KEV, type Physics } from './setup.js';
+
+/** A problem's tables take about 1 MB; these bounds keep an evening's sweep below a tenth of its memory limit. */
+const TABLES_BYTES = 48e6;
+const RADIATION_BYTES = 8e6;
+
+export interface Tables extends ScatteringTables, Doppler, Channels {
+  readonly grid: EnergyGrid;
+  readonly cells: Float64Array;
+  readonly bremsstrahlung: readonly (BremsstrahlungTables | null)[];
+}
+
+type SharedTables = Omit<Tables, 'cells' | 'bremsstrahlung'> & {
+  /** Cells of materials of density 1. */
+  readonly massCells: Float64Array;
+  /** Those of the densities asked for last. */
+  readonly last: { key: string; cells: Float64Array };
+};
+
+const sharedTables = new BoundedCache<SharedTables>(TABLES_BYTES);
+const radiation = new BoundedCache<BremsstrahlungTables | null>(RADIATION_BYTES);
+
+/** The tables of slots up to `topKeV`. */
+export function tablesOf(slots: readonly Slot[], topKeV: number, physics: Physics): Tables {
+  const tableTopKeV = tableTop(topKeV);
+  const compositions = slots.map(({ constituents }) => compositionKey(constituents)).join(';');
+  const kind = `${tableTopKeV};${Object.values(physics).join()}`;
+  const { massCells, last, ...shared } = sharedTables.get(`${kind};${compositions}`, () =>
+    makeShared(slots, tableTopKeV, physics),
+  );
+  const densities = slots.map(({ densityGPerCm3 }) => densityGPerCm3);
+  if (last.key !== densities.join()) {
+    last.key = densities.join();
+    last.cells = atDensities(massCells, densities);
+  }
+  return {
+    ...shared,
+    cells: last.cells,
+    bremsstrahlung: slots.map((slot) =>
+      radiation.get(`${kind};${slot.key}`, () => makeRadiation(slot, tableTopKeV, physics)),
+    ),
+  };
+}
+
+/** Half octaves: 1, 1.5, 2, 3, 4, 6 … keV. */
+function tableTop(topKeV: number): number {
+  const octave = 2 ** Math.floor(Math.log2(topKeV));
+  const step = [1, 1.5, 2].find((part) => octave * part >= topKeV)!;
+  return Math.min(MAX_ENERGY_KEV, octave * step);
+}
+
+function makeShared(slots: readonly Slot[], topKeV: number, physics: Physics): SharedTables {
+  const grid = gridOf(slots, topKeV);
+  const unit = slots.map((slot) => ({ ...slot, densityGPerCm3: 1 }));
+  return {
+    grid,
+    massCells: makeCells(unit, grid, physics),
+    ...makeScatteringTables(slots, topKeV, physics),
+    ...makeDoppler(slots, physics),
+    ...makeChannels(slots, grid, physics),
+    last: { key: '', cells: new Float64Array(0) },
+  };
+}
+
+/** Attenuation coefficients, the first line of each cell, times the densities of the slots. */
+function atDensities(massCells: Float64Array, densities: readonly number[]): Float64Array {
+  const cells = sharedDoubles(massCells.length);
+  cells.set(massCells);
+  const perSlot = massCells.length / densities.length;
+  densities.forEach((densityGPerCm3, s) => {
+    for (let i = s * perSlot; i < (s + 1) * perSlot; i += CELL_LENGTH) {
+      cells[i] *= densityGPerCm3;
+      cells[i + 1] *= densityGPerCm3;
+    }
+  });
+  return cells;
+}
