@@ -27,6 +27,8 @@ export interface TallyLayout {
   /** First bin to try at index floor(E × binScale): finds the bin of any grid of edges in a step or two. */
   readonly binGuide: Int32Array;
   readonly binScale: number;
+  /** False: bins are of one width and floor(E × binScale) is the bin itself. */
+  readonly unevenBins: boolean;
 
   readonly layers: number;
   /** Number of the layer's pulse-height spectrum, −1 for a layer that is no detector. */
@@ -66,6 +68,7 @@ export function makeTallyLayout(setup: Setup): TallyLayout {
     bins,
     edgesKeV,
     binScale,
+    unevenBins: !scaleGivesBin(edgesKeV, binScale),
     binGuide: makeBinGuide(edgesKeV, binScale),
     layers,
     detectorOfLayer,
@@ -91,6 +94,15 @@ function guideScale(edgesKeV: Float64Array): number {
   const top = edgesKeV[bins];
   const even = edgesKeV.every((edge, i) => Math.abs(edge - edgesKeV[0] - i * width) <= 1e-9 * top);
   return even ? 1 / width : Math.min(65536, 8 * bins) / top;
+}
+
+/** Whether floor(E × scale) is the bin of every energy, rounding at the edges included. */
+function scaleGivesBin(edgesKeV: Float64Array, scale: number): boolean {
+  const justBelow = 1 - 2 ** -53;
+  return edgesKeV.every(
+    (edge, i) =>
+      Math.floor(edge * scale) === i && (i === 0 || Math.floor(edge * justBelow * scale) === i - 1),
+  );
 }
 
 function makeBinGuide(edgesKeV: Float64Array, scale: number): Int32Array {
