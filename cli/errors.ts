@@ -32,7 +32,7 @@ export const EXIT_MEANINGS: Readonly<Record<ExitName, string>> = {
   run: 'the run failed',
   incomplete: 'finished, but part of the answer is missing or fails its check',
   interrupted: 'stopped by Ctrl-C; what was finished is written',
-  killed: 'stopped at once by a second Ctrl-C; nothing is written',
+  killed: 'stopped by a second Ctrl-C, or before anything was finished; nothing is written',
 };
 
 /** Errors outside setup files, each with the exit code it leads to. */
