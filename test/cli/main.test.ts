@@ -37,10 +37,88 @@ const thickset = (...args: string[]): Promise<Outcome> => runCli(args, { cwd: fo
 const bytes = (...path: string[]): Buffer => readFileSync(join(folder, ...path));
 
 describe('help', () => {
-  test.each([[['--help']], [['run', '--help']], [['summary', '--help']]])('%j', async (args) => {
-    const { code, stdout, stderr } = await thickset(...args);
+  async function help(...args: string[]): Promise<string> {
+    const { code, stdout, stderr } = await thickset(...args, '--help');
     expect({ code, stderr }).toEqual({ code: 0, stderr: '' });
-    expect(`\n${stdout}`).toMatchSnapshot();
+    return `\n${stdout}`;
+  }
+
+  test('of the program lists commands and exit codes', async () => {
+    expect(await help()).toMatchInlineSnapshot(`
+      "
+      Usage: thickset [options] [command]
+
+      Monte Carlo photon transport through stacks of layers, 1 keV to 20 MeV
+
+      Options:
+        -V, --version               output the version number
+        -h, --help                  display help for command
+
+      Commands:
+        run [options] <setup>       run a setup and write its result
+        summary [options] <folder>  show the figures and spectra of a finished run
+        material [options] <name>   show composition, attenuation coefficients and
+                                    narrow-beam thicknesses of a material
+        nuclide [options] [name]    show half-life, gamma, X-ray and annihilation
+                                    lines of a nuclide; without a name, list all
+        help [command]              display help for command
+
+      Exit codes:
+          0  done
+          1  a fault of the program itself
+          2  the command line cannot be understood
+          3  the setup file has problems
+          4  a file or folder cannot be read or written
+          5  the run failed
+          6  finished, but part of the answer is missing or fails its check
+          7  stopped by Ctrl-C; what was finished is written
+        130  stopped by a second Ctrl-C, or before anything was finished; nothing is written
+      "
+    `);
+  });
+
+  test('of run', async () => {
+    expect((await help('run')).split('\nExit codes')[0]).toMatchInlineSnapshot(`
+      "
+      Usage: thickset run [options] <setup>
+
+      run a setup and write its result
+
+      Arguments:
+        setup                 setup file (YAML)
+
+      Options:
+        --out <folder>        folder for the result
+        --overwrite           replace the result that is in the folder
+        --threads <number>    worker threads; default: one for each core
+        --seed <text>         seed to use instead of that of the setup
+        --histories <number>  histories to run instead of those of the setup
+        --quiet               no progress and no warnings on stderr
+        --json                print one JSON object instead of the summary
+        -h, --help            display help for command
+      "
+    `);
+  });
+
+  test('of summary', async () => {
+    expect((await help('summary')).split('\nExit codes')[0]).toMatchInlineSnapshot(`
+      "
+      Usage: thickset summary [options] <folder>
+
+      show the figures and spectra of a finished run
+
+      Arguments:
+        folder             folder written by thickset run
+
+      Options:
+        --spectra <which>  spectra to draw: those that leave and pulse heights, every
+                           one, or none (choices: "main", "all", "none", default:
+                           "main")
+        --width <columns>  width of the text; default: that of the terminal
+        --json             print one JSON object instead
+        -h, --help         display help for command
+      "
+    `);
   });
 
   test('the version is that of the package', async () => {
