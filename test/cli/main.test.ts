@@ -1,3 +1,4 @@
+/* eslint-disable no-control-regex -- escape sequences are what is looked for */
 import {
   existsSync,
   mkdirSync,
