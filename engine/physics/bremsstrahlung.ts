@@ -31,6 +31,8 @@ const SLACK = 1 + 1e-9;
  * @param out takes the photon energies (keV) in its first half and, at the same places of its second half, the
  *   cosines of their directions to that in which the electron started; its length is twice the number of photons
  *   there is room for, best 2 × MAX_ELECTRON_PHOTONS
+ * @param frames takes, at the same places as the energies and cosines in `out`, what the directions are made of: the
+ *   speed β of the electron as it radiates, and the cosine of its direction then to that in which it started
  * @returns how many photons there are
  * @throws RangeError for an energy above the tables, or when `out` has no room for a photon
  */
@@ -39,6 +41,7 @@ export function sampleBremsstrahlung(
   electronKeV: number,
   next: () => number,
   out: Float64Array,
+  frames: Float64Array | null = null,
 ): number {
   if (electronKeV <= tables.cutoffKeV) return 0;
   if (!(electronKeV <= tables.topKeV * SLACK)) {
@@ -50,7 +53,7 @@ export function sampleBremsstrahlung(
   const at = Math.log(electronKeV / tables.cutoffKeV) / tables.step;
   const u = next();
   if (u < silent[Math.min(Math.floor(at), silent.length - 1)]) return 0;
-  return emit(tables, electronKeV, u, next, out);
+  return emit(tables, electronKeV, u, next, out, frames);
 }
 
 function emit(
@@ -59,6 +62,7 @@ function emit(
   firstUniform: number,
   next: () => number,
   out: Float64Array,
+  frames: Float64Array | null,
 ): number {
   const { cutoffKeV, step, photons, turning } = tables;
   const room = out.length >> 1;
@@ -81,7 +85,14 @@ function emit(
       cutoffKeV * Math.exp(drawShare(tables, to * step, next) * to * step),
     );
     out[count] = photonKeV;
-    out[room + count] = drawCosine(Math.exp(-turned), emittingKeV, next);
+    const beta = speedOf(emittingKeV);
+    const atRest = 2 * next() - 1;
+    const turnedCosine = fisherCosine(Math.exp(-turned), next());
+    out[room + count] = composeCosines(turnedCosine, forward(atRest, beta), next());
+    if (frames !== null) {
+      frames[count] = beta;
+      frames[room + count] = turnedCosine;
+    }
     count++;
     kineticKeV = emittingKeV - photonKeV;
     u = next();
@@ -129,12 +140,20 @@ function drawShare(tables: BremsstrahlungTables, logRatio: number, next: () => n
   return Math.min(1, share);
 }
 
-/** Cosine between photon and first direction of the electron, whose own cosine to it has the given mean. */
-function drawCosine(meanCosine: number, electronKeV: number, next: () => number): number {
+/** Speed β = v/c of an electron. */
+function speedOf(electronKeV: number): number {
   const tau = electronKeV / ELECTRON_REST_KEV;
-  const beta = Math.sqrt(tau * (tau + 2)) / (1 + tau);
-  const atRest = 2 * next() - 1;
-  return composeCosines(fisherCosine(meanCosine, next()), (atRest + beta) / (1 + beta * atRest), next());
+  return Math.sqrt(tau * (tau + 2)) / (1 + tau);
+}
+
+/** Cosine to the electron's direction of what has cosine `atRest` in a frame that moves with it. */
+export function forward(atRest: number, beta: number): number {
+  return (atRest + beta) / (1 + beta * atRest);
+}
+
+/** Photons per sr at that cosine when they are isotropic in the moving frame. */
+export function forwardDensity(cosine: number, beta: number): number {
+  return (1 - beta * beta) / (4 * Math.PI * (1 - beta * cosine) ** 2);
 }
 
 /** Cosine of the angle between two directions that a third sees under cosines a and b, at azimuth 2 π u. */

@@ -34,6 +34,7 @@ export class Site {
   dopplerGivenUp = 0;
   /** Energies of one electron's photons, then their cosines to its first direction. */
   readonly electronPhotons = new Float64Array(2 * MAX_ELECTRON_PHOTONS);
+  readonly electronFrames = new Float64Array(2 * MAX_ELECTRON_PHOTONS);
   readonly next = () => nextOpenUniform(this.random);
 }
 
@@ -62,6 +63,18 @@ export function interact(problem: Problem, site: Site, slot: number, cell: numbe
   }
   producePair(problem, site, slot);
   return PAIR;
+}
+
+/** As `interact`, of a kind chosen by the caller; it must be possible at this energy. */
+export function interactAs(kind: number, problem: Problem, site: Site, slot: number, cell: number): void {
+  site.secondaries.count = 0;
+  if (kind === PHOTOELECTRIC) absorb(problem, site, slot, cell);
+  else if (kind === INCOHERENT) scatter(problem, site, slot);
+  else if (kind === PAIR) producePair(problem, site, slot);
+  else {
+    site.v = sampleCoherent(problem.coherent, problem.coherentBase[slot], site.energyKeV, site.random);
+    site.depositedKeV = 0;
+  }
 }
 
 /** Photoelectric absorption: the shell of the vacancy, its relaxation, the photoelectron. */
@@ -155,19 +168,23 @@ function producePair(problem: Problem, site: Site, slot: number): void {
 function brake(problem: Problem, site: Site, slot: number, electronKeV: number): number {
   const tables = problem.bremsstrahlung[slot];
   if (tables === null || electronKeV <= problem.cutoffKeV) return 0;
-  return sampleBremsstrahlung(tables, electronKeV, site.next, site.electronPhotons);
+  return sampleBremsstrahlung(tables, electronKeV, site.next, site.electronPhotons, site.electronFrames);
 }
 
 /** Sets an electron's photons free; `cosine` is that of the electron's direction. Returns their energy. */
 function release(site: Site, photons: number, cosine: number): number {
-  const { electronPhotons } = site;
+  const { electronPhotons, electronFrames, secondaries } = site;
   let radiatedKeV = 0;
   for (let i = 0; i < photons; i++) {
     const own = electronPhotons[MAX_ELECTRON_PHOTONS + i];
     const sines = Math.sqrt(Math.max(0, (1 - cosine * cosine) * (1 - own * own)));
     const turned = sines === 0 ? 0 : sines * Math.cos(Math.PI * nextUniform(site.random));
     radiatedKeV += electronPhotons[i];
-    site.secondaries.push(electronPhotons[i], cosine * own + turned, 0);
+    secondaries.push(electronPhotons[i], cosine * own + turned, 0);
+    const last = secondaries.count - 1;
+    secondaries.beta[last] = electronFrames[i];
+    secondaries.electronCosine[last] = cosine;
+    secondaries.turnedCosine[last] = electronFrames[MAX_ELECTRON_PHOTONS + i];
   }
   return radiatedKeV;
 }
