@@ -44,7 +44,10 @@ process.stdout.on('error', (error: NodeJS.ErrnoException) => {
   // The reader of a pipe has seen enough.
   if (error.code !== 'EPIPE') fail(error);
 });
-process.on('uncaughtException', fail);
+process.on('uncaughtException', (cause) => {
+  fail(cause);
+  process.exit();
+});
 
 const args = process.argv.slice(2);
 try {
