@@ -14,6 +14,7 @@ import {
 } from '../materials/index.js';
 import { atNodes, compositionKey, fillLines, type Slot } from './compile-slots.js';
 import type { EnergyGrid } from './energy-grid.js';
+import { RADIATION_CUTOFFS_KEV } from './local-cutoff.js';
 import { makeBremsstrahlungTables, type BremsstrahlungTables } from './physics/bremsstrahlung.js';
 import { COHERENT_LENGTH, fillCoherentTable } from './physics/coherent.js';
 import { fillAlias, fillProfile, PROFILE_LENGTH, type DopplerTables } from './physics/doppler.js';
@@ -251,9 +252,10 @@ function shellShares(slot: Slot, nodesKeV: Float64Array) {
   };
 }
 
-/** Thick-target bremsstrahlung tables of a slot; null where nothing radiates. */
-export function makeRadiation(slot: Slot, topKeV: number, physics: Physics): BremsstrahlungTables | null {
-  return physics.bremsstrahlung && slot.constituents.length > 0
-    ? makeBremsstrahlungTables(slot, topKeV, physics.cutoffKeV)
-    : null;
+/** Thick-target bremsstrahlung tables of a slot, one per emission cutoff; none where nothing radiates. */
+export function makeRadiation(slot: Slot, topKeV: number, physics: Physics): BremsstrahlungTables[] {
+  if (!physics.bremsstrahlung || slot.constituents.length === 0) return [];
+  return RADIATION_CUTOFFS_KEV.filter((cutoff) => cutoff === 0 || 2 * cutoff < topKeV).map((cutoff) =>
+    makeBremsstrahlungTables(slot, topKeV, Math.max(cutoff, physics.cutoffKeV)),
+  );
 }

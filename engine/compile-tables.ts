@@ -18,6 +18,7 @@ import {
 import { compositionKey, gridOf, makeCells, type Slot } from './compile-slots.js';
 import type { EnergyGrid } from './energy-grid.js';
 import type { BremsstrahlungTables } from './physics/bremsstrahlung.js';
+import { makeLocalCutoffs, type LocalCutoffs } from './local-cutoff.js';
 import { CELL_LENGTH, sharedDoubles } from './problem.js';
 import { MAX_ENERGY_KEV, type Physics } from './setup.js';
 
@@ -25,13 +26,14 @@ import { MAX_ENERGY_KEV, type Physics } from './setup.js';
 const TABLES_BYTES = 48e6;
 const RADIATION_BYTES = 8e6;
 
-export interface Tables extends ScatteringTables, Doppler, Channels {
+export interface Tables extends ScatteringTables, Doppler, Channels, LocalCutoffs {
   readonly grid: EnergyGrid;
   readonly cells: Float64Array;
-  readonly bremsstrahlung: readonly (BremsstrahlungTables | null)[];
+  readonly bremsstrahlung: readonly (readonly BremsstrahlungTables[])[];
+  readonly densityOfSlot: Float64Array;
 }
 
-type SharedTables = Omit<Tables, 'cells' | 'bremsstrahlung'> & {
+type SharedTables = Omit<Tables, 'cells' | 'bremsstrahlung' | 'densityOfSlot'> & {
   /** Cells of materials of density 1. */
   readonly massCells: Float64Array;
   /** Those of the densities asked for last. */
@@ -39,7 +41,7 @@ type SharedTables = Omit<Tables, 'cells' | 'bremsstrahlung'> & {
 };
 
 const sharedTables = new BoundedCache<SharedTables>(TABLES_BYTES);
-const radiation = new BoundedCache<BremsstrahlungTables | null>(RADIATION_BYTES);
+const radiation = new BoundedCache<readonly BremsstrahlungTables[]>(RADIATION_BYTES);
 
 /** The tables of slots up to `topKeV`. */
 export function tablesOf(slots: readonly Slot[], topKeV: number, physics: Physics): Tables {
@@ -57,6 +59,7 @@ export function tablesOf(slots: readonly Slot[], topKeV: number, physics: Physic
   return {
     ...shared,
     cells: last.cells,
+    densityOfSlot: Float64Array.from(densities),
     bremsstrahlung: slots.map((slot) =>
       radiation.get(`${kind};${slot.key}`, () => makeRadiation(slot, tableTopKeV, physics)),
     ),
@@ -73,9 +76,11 @@ function tableTop(topKeV: number): number {
 function makeShared(slots: readonly Slot[], topKeV: number, physics: Physics): SharedTables {
   const grid = gridOf(slots, topKeV);
   const unit = slots.map((slot) => ({ ...slot, densityGPerCm3: 1 }));
+  const massCells = makeCells(unit, grid, physics);
   return {
     grid,
-    massCells: makeCells(unit, grid, physics),
+    massCells,
+    ...makeLocalCutoffs(massCells, grid, physics.cutoffKeV),
     ...makeScatteringTables(slots, topKeV, physics),
     ...makeDoppler(slots, physics),
     ...makeChannels(slots, grid, physics),

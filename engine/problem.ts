@@ -61,7 +61,12 @@ export interface Problem {
   readonly channelTableBase: Int32Array;
   readonly relaxation: RelaxationTables;
 
-  readonly bremsstrahlung: readonly (BremsstrahlungTables | null)[];
+  /** Per slot, one table per emission cutoff of local-cutoff.ts; empty where nothing radiates. */
+  readonly bremsstrahlung: readonly (readonly BremsstrahlungTables[])[];
+
+  readonly densityOfSlot: Float64Array;
+  readonly localCutoffKeV: Float64Array;
+  readonly radiationStep: Int32Array;
 
   readonly tally: TallyLayout;
 }

@@ -11,6 +11,7 @@ import { MAX_TOUCHED, type BatchTally } from './batch-tally.js';
 import { ELECTRON_REST_KEV } from './constants.js';
 import { lineEnergyKeV, pickLine } from './emission.js';
 import { AZIMUTH_COSINE, AZIMUTH_STEPS, LOG_INVERSE, LOG_NEGATIVE, POWER_OF_TWO } from './lookup-tables.js';
+import { DEPTH_OFFSET, DEPTH_SHIFT, DEPTH_STEPS } from './local-cutoff.js';
 import { COLUMNS, ROW_LENGTH, ROW_OFFSET, ROW_SHIFT } from './physics/incoherent.js';
 import { interact, type Site } from './physics/interact.js';
 import { CELL_LENGTH, type Problem } from './problem.js';
@@ -54,7 +55,7 @@ function turnCosine(w: number, cosine: number, u: number): number {
 export function runSlabBatch(problem: Problem, histories: number, site: Site, tally: BatchTally): void {
   const { boundariesCm, cells, cellCount, cutoffKeV, emission, incoherent, incoherentBase, layers, plain } =
     problem;
-  const { slotOfLayer } = problem;
+  const { slotOfLayer, densityOfSlot, localCutoffKeV, radiationStep } = problem;
   const { nodesKeV, firstCell } = problem.grid;
   const { binGuide, binScale, unevenBins, edgesKeV, detectorOfLayer, bins, lines } = tally.layout;
   const { transmittedCell, reflectedCell, depositedCell, pulseHeightCell } = tally.layout;
@@ -228,14 +229,6 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
           }
         }
         deposited[layer] += depositedKeV;
-        let bin = (depositedKeV * binScale) | 0;
-        if (unevenBins) {
-          bin = binGuide[bin];
-          while (depositedKeV >= edgesKeV[bin + 1]) bin++;
-        }
-        bin += depositedCell + layer * bins;
-        pending[bin] += depositedKeV;
-        touched[touchedCount++] = bin;
         if (event !== 0) break;
       }
 
@@ -245,23 +238,22 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
         random[1] = s1;
         random[2] = s2;
         random[3] = carry;
+        const toFront = z - boundariesCm[layer];
+        const toFar = boundariesCm[layer + 1] - z;
+        doubleView[0] = (toFront < toFar ? toFront : toFar) * densityOfSlot[slot];
+        let depth = (wordView[1] >>> DEPTH_SHIFT) - DEPTH_OFFSET;
+        if (depth < 0) depth = 0;
+        else if (depth >= DEPTH_STEPS) depth = DEPTH_STEPS - 1;
+        depth += slot * DEPTH_STEPS;
+        site.localCutoffKeV = localCutoffKeV[depth];
+        site.radiationStep = radiationStep[depth];
         site.energyKeV = energyKeV;
         interact(problem, site, slot, cell);
         alive = site.energyKeV > 0;
 
         // Energy left on the spot.
         const depositedKeV = site.depositedKeV;
-        if (depositedKeV > 0) {
-          deposited[layer] += depositedKeV;
-          let bin = (depositedKeV * binScale) | 0;
-          if (unevenBins) {
-            bin = binGuide[bin];
-            while (depositedKeV >= edgesKeV[bin + 1]) bin++;
-          }
-          bin += depositedCell + layer * bins;
-          pending[bin] += depositedKeV;
-          touched[touchedCount++] = bin;
-        }
+        deposited[layer] += depositedKeV;
 
         // Photons set free wait, with their direction cosine turned from that of the one that came in.
         const emitted = secondaries.count;
@@ -338,25 +330,27 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
       deposited[l] = 0;
       figureSum[depositedFigure + l] += pulseKeV;
       figureSquare[depositedFigure + l] += pulseKeV * pulseKeV;
-      if (pulseKeV <= cutoffKeV) continue;
-      figureSum[interactingFigure + l]++;
-      const detector = detectorOfLayer[l];
-      if (detector < 0) continue;
-      if (pulseKeV >= sourceKeV * FULL_ENERGY) {
-        pulseKeV = sourceKeV;
-        figureSum[fullEnergyFigure + detector * lines + (lines > 1 ? line : 0)]++;
-      }
+      const whole = pulseKeV >= sourceKeV * FULL_ENERGY;
+      if (whole) pulseKeV = sourceKeV;
       let bin = (pulseKeV * binScale) | 0;
       if (unevenBins) {
         bin = binGuide[bin];
         while (pulseKeV >= edgesKeV[bin + 1]) bin++;
       }
-      bin += pulseHeightCell + detector * bins;
-      pending[bin]++;
-      touched[touchedCount++] = bin;
+      // A layer scores once per history: straight into the sums.
+      const cell = depositedCell + l * bins + bin;
+      cellSum[cell] += pulseKeV;
+      cellSquare[cell] += pulseKeV * pulseKeV;
+      if (pulseKeV <= cutoffKeV) continue;
+      figureSum[interactingFigure + l]++;
+      const detector = detectorOfLayer[l];
+      if (detector < 0) continue;
+      if (whole) figureSum[fullEnergyFigure + detector * lines + (lines > 1 ? line : 0)]++;
+      cellSum[pulseHeightCell + detector * bins + bin]++;
+      cellSquare[pulseHeightCell + detector * bins + bin]++;
     }
 
-    // Scores of the history, cell by cell: a cell scored twice counts with the square of its sum.
+    // Photons that left, cell by cell: a cell scored twice counts with the square of its sum.
     for (let i = 0; i < touchedCount; i++) {
       const scored = touched[i];
       const value = pending[scored];

@@ -7,6 +7,7 @@
  * needed to draw the energy at the next emission.
  */
 import { bremsstrahlungSpectrum, electronStopping, type Matter } from '../../materials/index.js';
+import { bucketOf, bucketStartKeV } from '../energy-grid.js';
 import { transportCoefficient } from './electron-scattering.js';
 
 export interface BremsstrahlungTables {
@@ -17,7 +18,7 @@ export interface BremsstrahlungTables {
   readonly step: number;
   /** N at the energies of the grid. */
   readonly photons: Float64Array;
-  /** exp(−N) at the upper end of each step: below it a uniform number means no photon. */
+  /** exp(−N) at the upper end of each bucket of the energy grid: below it a uniform number means no photon. */
   readonly silent: Float64Array;
   /** ∫ G₁ / L dT from the cutoff: mean cosines are exp(−differences). */
   readonly turning: Float64Array;
@@ -66,7 +67,7 @@ export function makeBremsstrahlungTables(
     topKeV: top,
     step: span / STEPS,
     photons: shared(STEPS + 1),
-    silent: shared(STEPS),
+    silent: shared(bucketOf(top) + 1),
     turning: shared(STEPS + 1),
     rowStep: span / rowSteps,
     rows,
@@ -127,6 +128,9 @@ function slowDown(material: Matter, tables: BremsstrahlungTables, sums: RowSums)
       photons[j + 1] += path * mix(sums.density) * logRatio;
       turning[j + 1] += path * transportCoefficient(material, electronKeV);
     }
-    silent[j] = Math.exp(-photons[j + 1]);
+  }
+  for (let bucket = 0; bucket < silent.length; bucket++) {
+    const at = Math.log(bucketStartKeV(bucket + 1) / cutoffKeV) / step;
+    silent[bucket] = Math.exp(-photons[Math.max(0, Math.min(STEPS, Math.ceil(at)))]);
   }
 }

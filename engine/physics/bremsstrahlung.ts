@@ -10,6 +10,7 @@
  * factor 1 / (1 − β cos θ)² of the emission (Koch and Motz, Rev. Mod. Phys. 31 (1959) 920).
  */
 import { ELECTRON_REST_KEV } from '../constants.js';
+import { bucketOf } from '../energy-grid.js';
 import type { BremsstrahlungTables } from './bremsstrahlung-tables.js';
 
 export { makeBremsstrahlungTables, type BremsstrahlungTables } from './bremsstrahlung-tables.js';
@@ -49,10 +50,8 @@ export function sampleBremsstrahlung(
       `an electron of ${electronKeV} keV is above the tables, which end at ${tables.topKeV} keV`,
     );
   }
-  const { silent } = tables;
-  const at = Math.log(electronKeV / tables.cutoffKeV) / tables.step;
   const u = next();
-  if (u < silent[Math.min(Math.floor(at), silent.length - 1)]) return 0;
+  if (u < tables.silent[bucketOf(electronKeV)]) return 0;
   return emit(tables, electronKeV, u, next, out, frames);
 }
 

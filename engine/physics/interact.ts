@@ -30,6 +30,10 @@ export class Site {
   depositedKeV = 0;
   readonly secondaries = new Secondaries();
   readonly random: StreamState = new Float64Array(4);
+  /** Photons below it deposit on the spot: the problem's cutoff, or what cannot get out of the layer from here. */
+  localCutoffKeV = 0;
+  /** Number of the emission cutoff that goes with it (local-cutoff.ts). */
+  radiationStep = 0;
   /** Draws refused too often by the Doppler sampler (rare oddity, reported). */
   dopplerGivenUp = 0;
   /** Energies of one electron's photons, then their cosines to its first direction. */
@@ -95,7 +99,7 @@ function absorb(problem: Problem, site: Site, slot: number, cell: number): void 
           problem.relaxation,
           shell,
           energyKeV,
-          problem.cutoffKeV,
+          site.localCutoffKeV,
           site.secondaries,
           site.random,
         );
@@ -136,7 +140,7 @@ function scatter(problem: Problem, site: Site, slot: number): void {
   const photons = brake(problem, site, slot, electronKeV);
   const emittedKeV = photons > 0 ? release(site, photons, recoilCosine(energyKeV, v)) : 0;
   site.v = v;
-  if (scatteredKeV >= problem.cutoffKeV) {
+  if (scatteredKeV >= site.localCutoffKeV) {
     site.energyKeV = scatteredKeV;
     site.depositedKeV = electronKeV - emittedKeV;
   } else {
@@ -154,7 +158,7 @@ function producePair(problem: Problem, site: Site, slot: number): void {
   // At the energies that radiate, both fly forward: their mean angle is about m c² / E.
   let emittedKeV = release(site, brake(problem, site, slot, electronKeV), 1);
   emittedKeV += release(site, brake(problem, site, slot, kineticKeV - electronKeV), 1);
-  if (problem.cutoffKeV <= ELECTRON_REST_KEV) {
+  if (site.localCutoffKeV <= ELECTRON_REST_KEV) {
     const cosine = 2 * nextUniform(site.random) - 1;
     site.secondaries.push(ELECTRON_REST_KEV, cosine, 0);
     site.secondaries.push(ELECTRON_REST_KEV, -cosine, 1);
@@ -166,8 +170,10 @@ function producePair(problem: Problem, site: Site, slot: number): void {
 
 /** Slows an electron (or positron: same yields) down to rest; its photons, if any, are in `site.electronPhotons`. */
 function brake(problem: Problem, site: Site, slot: number, electronKeV: number): number {
-  const tables = problem.bremsstrahlung[slot];
-  if (tables === null || electronKeV <= problem.cutoffKeV) return 0;
+  if (electronKeV <= site.localCutoffKeV) return 0;
+  const radiation = problem.bremsstrahlung[slot];
+  if (radiation.length === 0) return 0;
+  const tables = radiation[Math.min(site.radiationStep, radiation.length - 1)];
   return sampleBremsstrahlung(tables, electronKeV, site.next, site.electronPhotons, site.electronFrames);
 }
 
