@@ -36,13 +36,11 @@ const SPECTRUM_TITLES: Readonly<Record<SpectrumTally, string>> = {
 };
 
 function head({ title, histories, seed, stopped, timings }: Manifest, style: Style): string[] {
-  const rate = formatCount(timings.histories_per_second);
   return [
     ...wrap(clip(title, 200), style.width).map(style.heading),
-    ...wrap(
-      `${formatCount(histories)} histories in ${formatDuration(timings.wall_s)} (${rate} per second), ` +
-        `${STOPPED[stopped]}, seed ${clip(seed)}`,
-      style.width,
+    ...wrap(`${formatCount(histories)} histories, ${STOPPED[stopped]}; seed ${clip(seed)}`, style.width),
+    style.note(
+      `${formatDuration(timings.wall_s)}, ${formatCount(timings.histories_per_second)} histories per second`,
     ),
   ];
 }

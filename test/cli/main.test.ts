@@ -163,7 +163,9 @@ describe('a run', () => {
       'spectra.arrow',
       'totals.arrow',
     ]);
-    expect(first.stdout).toMatch(/^Crystal behind a window\n30,000 histories in /);
+    expect(first.stdout).toMatch(
+      /^Crystal behind a window\n30,000 histories, all planned histories done; seed spawned\n/,
+    );
     expect(first.stdout).toMatch(/full_energy +crystal +661\.7 keV +0\.\d+ +\+\/- 0\.\d+ /);
     expect(first.stdout).toMatch(/idealised slab model/);
   });

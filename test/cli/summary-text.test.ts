@@ -35,7 +35,8 @@ test('a run stopped by its time limit, 110 columns wide', () => {
   expect(summary({}, { width: 110 })).toMatchInlineSnapshot(`
     "
     Crystal behind an aluminium window
-    800,000 histories in 10 min (1,339 per second), stopped by the time limit, seed window-1
+    800,000 histories, stopped by the time limit; seed window-1
+    10 min, 1,339 histories per second
 
     What went in
       source    point, 25 cm in front
@@ -120,8 +121,8 @@ test('the same without decays and activity, plain, with spectra, 80 columns wide
   expect(summary({ setup }, { unicode: false, spectra: 'main' })).toMatchInlineSnapshot(`
     "
     Crystal behind an aluminium window
-    800,000 histories in 10 min (1,339 per second), stopped by the time limit, seed
-    window-1
+    800,000 histories, stopped by the time limit; seed window-1
+    10 min, 1,339 histories per second
 
     What went in
       source    point, 25 cm in front
