@@ -8,6 +8,8 @@ export function fromEngine(error: EngineError): ThicksetError {
       return errors.notSupported(error.message);
     case 'worker_failed':
       return errors.workerDied(reason(error.cause), error);
+    case 'checkpoint':
+      return errors.checkpointUnfit(error.message, error);
     case 'balance':
       return new ThicksetError(
         'balance_violated',

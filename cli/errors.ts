@@ -44,6 +44,11 @@ const EXIT_OF = {
   disk_full: 'files',
   result_missing: 'files',
   result_damaged: 'files',
+  folder_in_use: 'files',
+  checkpoint_unfit: 'files',
+  not_the_same: 'usage',
+  shards_do_not_fit: 'files',
+  scheduler: 'run',
   unknown_material: 'usage',
   unknown_nuclide: 'usage',
   not_supported: 'run',
@@ -100,6 +105,21 @@ export const errors = {
     new ThicksetError('result_missing', `${path}: no results here`, 'name a folder written by thickset run'),
   resultDamaged: (path: string, what: string, cause?: unknown) =>
     new ThicksetError('result_damaged', `${path}: damaged, ${what}`, 'run the setup again', cause),
+  folderInUse: (folder: string, holder: string, wayOut: string) =>
+    new ThicksetError('folder_in_use', `${folder}: in use by ${holder}`, wayOut),
+  checkpointUnfit: (what: string, cause?: unknown) =>
+    new ThicksetError('checkpoint_unfit', `saved state: ${what}`, 'start anew in another folder', cause),
+  /** `changes` says what was and what is. */
+  notTheSame: (folder: string, what: string, changes: readonly string[]) =>
+    new ThicksetError(
+      'not_the_same',
+      `${folder}: holds another ${what}: ${changes.join('; ')}`,
+      'undo the change, or choose another folder with --out',
+    ),
+  shardsDoNotFit: (what: string, wayOut: string | null = null) =>
+    new ThicksetError('shards_do_not_fit', what, wayOut),
+  scheduler: (what: string, wayOut: string | null = null, cause?: unknown) =>
+    new ThicksetError('scheduler', what, wayOut, cause),
   unknownMaterial: (name: string, nearest: string | null) =>
     new ThicksetError('unknown_material', `unknown material ${show(name)}`, didYouMean(nearest)),
   unknownNuclide: (name: string, nearest: string | null) =>

@@ -17,6 +17,18 @@ export interface BatchPlan {
   readonly batchesPerBlock: number;
 }
 
+/** Part `index` (from 1) of `count` parts of a run or sweep. */
+export interface Shard {
+  readonly index: number;
+  readonly count: number;
+}
+
+/** Batches from `first` up to but not including `end`. */
+export interface BatchRange {
+  readonly first: number;
+  readonly end: number;
+}
+
 /** The plan of a run of at most `histories` with `cells` spectrum cells. */
 export function planBatches(histories: number, cells: number): BatchPlan {
   const batchSize = BASE_BATCH * Math.ceil(cells / BASE_CELLS);
@@ -27,4 +39,13 @@ export function planBatches(histories: number, cells: number): BatchPlan {
 /** Histories of one batch: the last may be shorter. */
 export function historiesOf(plan: BatchPlan, batch: number): number {
   return Math.min(plan.batchSize, plan.histories - batch * plan.batchSize);
+}
+
+/** The batches of a shard, whole blocks; none where there are more shards than blocks. All batches without a shard. */
+export function rangeOf(plan: BatchPlan, shard: Shard | null): BatchRange {
+  if (shard === null) return { first: 0, end: plan.batches };
+  const blocks = Math.ceil(plan.batches / plan.batchesPerBlock);
+  const start = (part: number) =>
+    Math.min(plan.batches, Math.floor((part * blocks) / shard.count) * plan.batchesPerBlock);
+  return { first: start(shard.index - 1), end: start(shard.index) };
 }

@@ -1,6 +1,6 @@
 /** Errors of the engine: a run that cannot start or cannot be trusted. */
 
-export type EngineErrorCode = 'unsupported' | 'worker_failed' | 'balance';
+export type EngineErrorCode = 'unsupported' | 'worker_failed' | 'balance' | 'checkpoint';
 
 export class EngineError extends Error {
   override readonly name = 'EngineError';

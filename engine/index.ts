@@ -1,5 +1,11 @@
 /** The door of the engine folder. */
-export { simulate } from './simulate.js';
+export type { BatchPlan, Shard } from './batch-plan.js';
+export { decodeState, encodeState } from './checkpoint.js';
+export { joinShards } from './join-states.js';
+export { Run, type RunStart } from './run.js';
+export type { RunState } from './run-sums.js';
+export { playRun, simulate } from './simulate.js';
+export { Simulator, type Playlist } from './simulator.js';
 export { EngineError, type EngineErrorCode } from './errors.js';
 export type * from './setup.js';
 export { MAX_ENERGY_KEV, MAX_LAYERS, MIN_ENERGY_KEV } from './setup.js';

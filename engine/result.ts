@@ -2,6 +2,8 @@
  * What a run gives back: every figure with its standard error, every spectrum, the conservation check and how
  * long it took. Everything is per source photon unless a unit says otherwise. Unknown is null, never 0.
  */
+import type { Shard } from './batch-plan.js';
+import type { RunState } from './run-sums.js';
 import type { Setup } from './setup.js';
 
 /** One figure; the columns of totals.arrow. */
@@ -77,10 +79,22 @@ export interface Progress {
   readonly figure: QuantityRow | null;
 }
 
+/** Where and how often the state of a run is put into safety. */
+export interface Checkpointing {
+  readonly everyS: number;
+  /** Called at a batch boundary, and at the end of a run that is not complete. Must be done with the state on return. */
+  readonly save: (state: RunState) => void;
+}
+
 export interface SimulateOptions {
   /** Worker threads; default: the cores of the machine. */
   readonly threads?: number;
   readonly onProgress?: (progress: Progress) => void;
   /** Aborting finishes the batches in hand and returns what there is (`stopped: 'interrupted'`). */
   readonly signal?: AbortSignal;
+  /** Goes on from the saved state of a run of the same setup and shard. */
+  readonly from?: RunState | null;
+  /** Plays one part of the run only, to be merged with the others; not with `until` or a time limit. */
+  readonly shard?: Shard | null;
+  readonly checkpoint?: Checkpointing | null;
 }

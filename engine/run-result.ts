@@ -1,0 +1,67 @@
+/** The result of a run from its sums. */
+import { topEnergyKeV } from './emission.js';
+import { EngineError } from './errors.js';
+import type { Problem } from './problem.js';
+import type { Balance, RunResult, StopReason, Timings } from './result.js';
+import type { RunState, Sums } from './run-sums.js';
+import type { Setup } from './setup.js';
+import { FIGURE, type TallyLayout } from './tally-layout.js';
+import { spectraOf, totalsOf } from './totals.js';
+import { oddityWarnings, setupWarnings } from './warnings.js';
+
+/** Energy book-keeping must close to this relative difference. */
+const BALANCE_TOLERANCE = 1e-9;
+
+export interface RunParts {
+  readonly setup: Setup;
+  readonly problem: Problem;
+  readonly state: RunState;
+  /** All sums; without those of cells the result has no spectra. */
+  readonly sums: Sums;
+  readonly stopped: StopReason;
+  readonly timings: Timings;
+}
+
+/** @throws EngineError when the energy book-keeping does not close */
+export function makeResult({ setup, problem, state, sums, stopped, timings }: RunParts): RunResult {
+  const { histories, batches } = state;
+  const layout = problem.tally;
+  const balance = balanceOf(sums, layout);
+  if (balance.relativeError > BALANCE_TOLERANCE) {
+    throw new EngineError(
+      'balance',
+      `energy is not conserved: in − deposited − out is ${balance.relativeError} of in`,
+    );
+  }
+  const figures = { setup, layout, historyWeight: problem.historyWeight, histories, sums };
+  return {
+    setup,
+    histories,
+    batches,
+    totals: histories > 0 ? totalsOf(figures) : [],
+    spectra: histories > 0 && sums.cellSum.length > 0 ? spectraOf(figures) : [],
+    balance,
+    warnings: [
+      ...setupWarnings(setup, topEnergyKeV(problem.emission)),
+      ...oddityWarnings(state.oddities.dopplerGivenUp),
+    ],
+    timings,
+    stopped,
+  };
+}
+
+function balanceOf(sums: Sums, layout: TallyLayout): Balance {
+  const figure = (index: number) => sums.figureSum[index];
+  let energyDepositedKeV = 0;
+  for (let l = 0; l < layout.layers; l++) energyDepositedKeV += figure(layout.depositedFigure + l);
+  const energyOutKeV =
+    figure(FIGURE.transmittedEnergy) + figure(FIGURE.reflectedEnergy) + figure(FIGURE.sideEscapeEnergy);
+  const energyInKeV = figure(FIGURE.sourceEnergy);
+  const difference = Math.abs(energyInKeV - energyDepositedKeV - energyOutKeV);
+  return {
+    energyInKeV,
+    energyDepositedKeV,
+    energyOutKeV,
+    relativeError: energyInKeV > 0 ? difference / energyInKeV : 0,
+  };
+}
