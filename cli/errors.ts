@@ -4,7 +4,8 @@
  *
  * A line reads `file: path: rule, got value (line, column); way out`.
  */
-import { nearestWord } from '../materials/index.js';
+// Not through the door: that would load every table of materials with every command, a quarter of a second.
+import { nearestWord } from '../materials/nearest.js';
 import { clip, listOr, rounded, show, showNumber } from './show.js';
 
 /** How the program ends; `--help` lists the meanings. */

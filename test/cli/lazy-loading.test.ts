@@ -28,13 +28,13 @@ test('the walk through the imports sees packages and folders', () => {
 
 test('summary loads neither the engine nor the setup reader, so that it starts quickly', () => {
   const heavy = loaded('cli/summary-command.js').filter((name) =>
-    /^(zod|yaml|piscina|string-width|materials\/|geometry\/|engine\/(?!setup\.js))/.test(name),
+    /^(zod|yaml|piscina|string-width|materials\/(?!nearest\.js)|geometry\/|engine\/(?!setup\.js))/.test(name),
   );
   expect(heavy).toEqual([]);
 });
 
 test('the program loads a command only when it is asked for', () => {
-  const heavy = loaded('cli/main.js').filter((name) => !/^(node:|commander$|cli\/)/.test(name));
+  const heavy = loaded('cli/main.js').filter((name) => !/^(node:|commander$|fastest-levenshtein$|cli\/|materials\/nearest\.js$)/.test(name));
   expect(heavy).toEqual([]);
   expect(loaded('cli/main.js').filter((name) => /-command/.test(name))).toEqual([]);
 });
