@@ -4,7 +4,7 @@
  *
  * A line reads `file: path: rule, got value (line, column); way out`.
  */
-// Not through the door: that would load every table of materials with every command, a quarter of a second.
+// Not through the door: that would load every table of materials with every command, a fifth of the time of a summary.
 import { nearestWord } from '../materials/nearest.js';
 import { clip, listOr, rounded, show, showNumber } from './show.js';
 

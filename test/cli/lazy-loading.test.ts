@@ -34,7 +34,9 @@ test('summary loads neither the engine nor the setup reader, so that it starts q
 });
 
 test('the program loads a command only when it is asked for', () => {
-  const heavy = loaded('cli/main.js').filter((name) => !/^(node:|commander$|fastest-levenshtein$|cli\/|materials\/nearest\.js$)/.test(name));
+  const heavy = loaded('cli/main.js').filter(
+    (name) => !/^(node:|commander$|fastest-levenshtein$|cli\/|materials\/nearest\.js$)/.test(name),
+  );
   expect(heavy).toEqual([]);
   expect(loaded('cli/main.js').filter((name) => /-command/.test(name))).toEqual([]);
 });
