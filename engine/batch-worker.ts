@@ -6,6 +6,7 @@ import type { Kernel, Problem } from './problem.js';
 import { seedStream } from './random.js';
 import type { BatchResult } from './run-sums.js';
 import { runSlabBatch } from './slab-kernel.js';
+import { runSolidBatch } from './solid-kernel.js';
 
 /** Batches `first`, `first + 1`, … with their numbers of histories. */
 export interface BatchTask {
@@ -17,6 +18,7 @@ export interface BatchTask {
 const KERNELS: Record<Kernel, (problem: Problem, histories: number, site: Site, tally: BatchTally) => void> =
   {
     slab: runSlabBatch,
+    solid: runSolidBatch,
   };
 
 /** Plays the batches of a task. */
@@ -48,6 +50,7 @@ export function playBatch(problem: Problem, batch: number, histories: number): B
     figureSum: tally.figureSum,
     figureSquare: tally.figureSquare,
     dopplerGivenUp: site.dopplerGivenUp,
+    strayed: site.strayed,
     startedMs,
     endedMs: performance.timeOrigin + performance.now(),
   };

@@ -5,6 +5,7 @@ import { PAIR_THRESHOLD_KEV } from './constants.js';
 import { makeEmissionTable, topEnergyKeV } from './emission.js';
 import { sharedDoubles, type Problem } from './problem.js';
 import type { Physics, Setup } from './setup.js';
+import { hasEdges, makeSolidProblem } from './solid-source.js';
 import { makeTallyLayout } from './tally-layout.js';
 
 /** Compiles a checked setup. */
@@ -14,8 +15,11 @@ export function compile(setup: Setup): Problem {
   const topKeV = topEnergyKeV(emission);
   const { slots, slotOfLayer } = slotsOf(stack);
   const tables = tablesOf(slots, topKeV, physics);
+  const beamCosine = source.shape.kind === 'beam' ? Math.cos((source.shape.angleDeg * Math.PI) / 180) : 1;
+  const sourceLayer = source.shape.kind === 'embedded' ? layerNumber(setup, source.shape.layer) : 0;
+  const solid = hasEdges(setup) ? makeSolidProblem(setup, beamCosine, sourceLayer) : null;
   return {
-    kernel: 'slab',
+    kernel: solid ? 'solid' : 'slab',
     seed: setup.seed,
     ...tables,
     cellCount: tables.grid.nodesKeV.length - 1,
@@ -23,12 +27,14 @@ export function compile(setup: Setup): Problem {
     boundariesCm: boundaries(setup),
     slotOfLayer,
     source: source.shape,
-    beamCosine: source.shape.kind === 'beam' ? Math.cos((source.shape.angleDeg * Math.PI) / 180) : 1,
-    sourceLayer: source.shape.kind === 'embedded' ? layerNumber(setup, source.shape.layer) : 0,
+    beamCosine,
+    sourceLayer,
     emission,
-    historyWeight: source.shape.kind === 'point' || source.shape.kind === 'disc' ? 0.5 : 1,
+    historyWeight:
+      solid === null && (source.shape.kind === 'point' || source.shape.kind === 'disc') ? 0.5 : 1,
     cutoffKeV: physics.cutoffKeV,
     plain: isPlain(physics, topKeV),
+    solid,
     tally: makeTallyLayout(setup),
   };
 }

@@ -9,6 +9,7 @@ import type { EnergyGrid } from './energy-grid.js';
 import type { EmissionTable } from './emission.js';
 import type { TallyLayout } from './tally-layout.js';
 import type { SourceShape } from './setup.js';
+import type { SolidProblem } from './solid-source.js';
 
 /**
  * Numbers per cell and slot, each a straight line a + b E over the cell: linear attenuation coefficient (1/cm), then
@@ -17,7 +18,7 @@ import type { SourceShape } from './setup.js';
 export const CELL_LENGTH = 8;
 
 /** Which history loop plays the problem: chosen once per run, so that infinite stacks pay nothing for finite ones. */
-export type Kernel = 'slab';
+export type Kernel = 'slab' | 'solid';
 
 export interface Problem {
   readonly kernel: Kernel;
@@ -67,6 +68,9 @@ export interface Problem {
   readonly densityOfSlot: Float64Array;
   readonly localCutoffKeV: Float64Array;
   readonly radiationStep: Int32Array;
+
+  /** Only where layers have edges. */
+  readonly solid: SolidProblem | null;
 
   readonly tally: TallyLayout;
 }

@@ -11,6 +11,8 @@ import { oddityWarnings, setupWarnings } from './warnings.js';
 
 /** Energy book-keeping must close to this relative difference. */
 const BALANCE_TOLERANCE = 1e-9;
+/** Photons that may be found outside the layer they were in, per history. */
+const STRAYED_TOLERANCE = 1e-6;
 
 export interface RunParts {
   readonly setup: Setup;
@@ -22,7 +24,7 @@ export interface RunParts {
   readonly timings: Timings;
 }
 
-/** @throws EngineError when the energy book-keeping does not close */
+/** @throws EngineError when the energy book-keeping does not close, or photons got lost */
 export function makeResult({ setup, problem, state, sums, stopped, timings }: RunParts): RunResult {
   const { histories, batches } = state;
   const layout = problem.tally;
@@ -33,6 +35,12 @@ export function makeResult({ setup, problem, state, sums, stopped, timings }: Ru
       `energy is not conserved: in − deposited − out is ${balance.relativeError} of in`,
     );
   }
+  if (state.oddities.strayed > STRAYED_TOLERANCE * histories) {
+    throw new EngineError(
+      'balance',
+      `${state.oddities.strayed} photons were found outside the layer they were in, in ${histories} histories`,
+    );
+  }
   const figures = { setup, layout, historyWeight: problem.historyWeight, histories, sums };
   return {
     setup,
@@ -41,10 +49,7 @@ export function makeResult({ setup, problem, state, sums, stopped, timings }: Ru
     totals: histories > 0 ? totalsOf(figures) : [],
     spectra: histories > 0 && sums.cellSum.length > 0 ? spectraOf(figures) : [],
     balance,
-    warnings: [
-      ...setupWarnings(setup, topEnergyKeV(problem.emission)),
-      ...oddityWarnings(state.oddities.dopplerGivenUp),
-    ],
+    warnings: [...setupWarnings(setup, topEnergyKeV(problem.emission)), ...oddityWarnings(state.oddities)],
     timings,
     stopped,
   };

@@ -3,7 +3,7 @@ import type { BatchPlan } from './batch-plan.js';
 import type { TallyLayout } from './tally-layout.js';
 
 /** Counts of rare oddities that batches give back and runs add up. */
-export const ODDITIES = ['dopplerGivenUp'] as const;
+export const ODDITIES = ['dopplerGivenUp', 'strayed'] as const;
 
 export type Oddities = Record<(typeof ODDITIES)[number], number>;
 

@@ -70,13 +70,15 @@ function detectorRows(run: RunFigures): QuantityRow[] {
     const rows = lines.map((line, i) =>
       row(run, first + i, 'full_energy', '1', layer.name, line?.energyKeV ?? null),
     );
+    // A history is of one line, so squares add up too.
     const all = lines.reduce((sum, _, i) => sum + sums.figureSum[first + i], 0);
+    const allSquare = lines.reduce((sum, _, i) => sum + sums.figureSquare[first + i], 0);
     if (lines.length > 1) {
-      const value = estimate(all, all, run.histories, run.historyWeight);
+      const value = estimate(all, allSquare, run.histories, run.historyWeight);
       rows.push({ quantity: 'full_energy', layer: layer.name, lineKeV: null, ...value, unit: '1' });
     }
     const interacting = layout.interactingFigure + l;
-    const ratio = partRatio(all, all, sums.figureSum[interacting], sums.figureSquare[interacting]);
+    const ratio = partRatio(all, allSquare, sums.figureSum[interacting], sums.figureSquare[interacting]);
     rows.push({
       quantity: 'peak_to_total',
       layer: layer.name,

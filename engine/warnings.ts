@@ -1,5 +1,6 @@
 /** The warnings a run can give: one closed vocabulary, each given once with its count. */
 import type { Warning } from './result.js';
+import type { Oddities } from './run-sums.js';
 import type { Setup } from './setup.js';
 import { PAIR_THRESHOLD_KEV } from './constants.js';
 
@@ -19,13 +20,17 @@ export function setupWarnings(setup: Setup, topKeV: number): Warning[] {
 }
 
 /** Warnings from what was counted during the run. */
-export function oddityWarnings(dopplerGivenUp: number): Warning[] {
-  if (dopplerGivenUp === 0) return [];
+export function oddityWarnings({ dopplerGivenUp, strayed }: Readonly<Oddities>): Warning[] {
   return [
     {
       code: 'doppler_given_up',
       message: 'scatterings for which no electron momentum was found kept the free-electron energy',
       count: dopplerGivenUp,
     },
-  ];
+    {
+      code: 'photons_strayed',
+      message: 'photons were found outside the layer they were in',
+      count: strayed,
+    },
+  ].filter(({ count }) => count > 0);
 }

@@ -36,6 +36,8 @@ export class Site {
   radiationStep = 0;
   /** Draws refused too often by the Doppler sampler (rare oddity, reported). */
   dopplerGivenUp = 0;
+  /** Photons found outside the layer they were in (rare oddity; a run with many fails). */
+  strayed = 0;
   /** Energies of one electron's photons, then their cosines to its first direction. */
   readonly electronPhotons = new Float64Array(2 * MAX_ELECTRON_PHOTONS);
   readonly electronFrames = new Float64Array(2 * MAX_ELECTRON_PHOTONS);
