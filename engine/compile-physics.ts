@@ -177,6 +177,7 @@ export interface Channels {
   readonly channelBase: Int32Array;
   readonly channelCount: Int32Array;
   readonly channelShell: Int32Array;
+  readonly reachableKeV: Float64Array;
   readonly channelTable: Float64Array;
   readonly channelTableBase: Int32Array;
   readonly relaxation: RelaxationTables;
@@ -201,6 +202,7 @@ export function makeChannels(slots: readonly Slot[], grid: EnergyGrid, physics: 
   const channelBase = sharedInts(slots.length);
   const channelCount = sharedInts(slots.length);
   const channelShell = sharedInts(total);
+  const reachableKeV = sharedDoubles(slots.length * cellCount);
   const channelTable = sharedDoubles(total * cellCount * 2);
   const channelTableBase = sharedInts(slots.length);
   let base = 0;
@@ -210,6 +212,13 @@ export function makeChannels(slots: readonly Slot[], grid: EnergyGrid, physics: 
     channelBase[s] = base;
     channelCount[s] = channels.length;
     channelTableBase[s] = tableBase;
+    for (const { shellData } of channels) {
+      for (let cell = 0; cell < cellCount; cell++) {
+        if (nodesKeV[cell + 1] <= shellData.bindingKeV) continue;
+        const at = s * cellCount + cell;
+        reachableKeV[at] = Math.max(reachableKeV[at], shellData.bindingKeV);
+      }
+    }
     const cumulative = new Float64Array(nodesKeV.length);
     const shares = shellShares(slot, nodesKeV);
     channels.forEach(({ constituent, index, shell }, c) => {
@@ -224,6 +233,7 @@ export function makeChannels(slots: readonly Slot[], grid: EnergyGrid, physics: 
     channelBase,
     channelCount,
     channelShell,
+    reachableKeV,
     channelTable,
     channelTableBase,
     relaxation: makeRelaxationTables(elements.map((z) => shells.get(z)!.data)),

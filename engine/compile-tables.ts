@@ -18,8 +18,8 @@ import {
 import { compositionKey, gridOf, makeCells, type Slot } from './compile-slots.js';
 import type { EnergyGrid } from './energy-grid.js';
 import type { BremsstrahlungTables } from './physics/bremsstrahlung.js';
-import { makeLocalCutoffs, type LocalCutoffs } from './local-cutoff.js';
-import { CELL_LENGTH, sharedDoubles } from './problem.js';
+import { makeLocalCutoffs, RADIATION_STEPS, type LocalCutoffs } from './local-cutoff.js';
+import { CELL_LENGTH, sharedDoubles, sharedInts } from './problem.js';
 import { MAX_ENERGY_KEV, type Physics } from './setup.js';
 
 /** A problem's tables take about 1 MB; these bounds keep an evening's sweep below a tenth of its memory limit. */
@@ -30,10 +30,12 @@ export interface Tables extends ScatteringTables, Doppler, Channels, LocalCutoff
   readonly grid: EnergyGrid;
   readonly cells: Float64Array;
   readonly bremsstrahlung: readonly (readonly BremsstrahlungTables[])[];
+  readonly silent: Float64Array;
+  readonly silentBase: Int32Array;
   readonly densityOfSlot: Float64Array;
 }
 
-type SharedTables = Omit<Tables, 'cells' | 'bremsstrahlung' | 'densityOfSlot'> & {
+type SharedTables = Omit<Tables, 'cells' | 'bremsstrahlung' | 'silent' | 'silentBase' | 'densityOfSlot'> & {
   /** Cells of materials of density 1. */
   readonly massCells: Float64Array;
   /** Those of the densities asked for last. */
@@ -56,14 +58,40 @@ export function tablesOf(slots: readonly Slot[], topKeV: number, physics: Physic
     last.key = densities.join();
     last.cells = atDensities(massCells, densities);
   }
+  const bremsstrahlung = slots.map((slot) =>
+    radiation.get(`${kind};${slot.key}`, () => makeRadiation(slot, tableTopKeV, physics)),
+  );
   return {
     ...shared,
     cells: last.cells,
     densityOfSlot: Float64Array.from(densities),
-    bremsstrahlung: slots.map((slot) =>
-      radiation.get(`${kind};${slot.key}`, () => makeRadiation(slot, tableTopKeV, physics)),
-    ),
+    bremsstrahlung,
+    ...joinSilent(bremsstrahlung),
   };
+}
+
+/** The chances of silence of all bremsstrahlung tables in one array, for the history loop. */
+function joinSilent(bremsstrahlung: Tables['bremsstrahlung']): Pick<Tables, 'silent' | 'silentBase'> {
+  const silentBase = sharedInts(bremsstrahlung.length * RADIATION_STEPS);
+  const parts: Float64Array[] = [];
+  let length = 0;
+  bremsstrahlung.forEach((tables, slot) => {
+    for (let step = 0; step < RADIATION_STEPS && tables.length > 0; step++) {
+      const { silent } = tables[Math.min(step, tables.length - 1)];
+      const known = step < tables.length ? -1 : silentBase[slot * RADIATION_STEPS + tables.length - 1];
+      silentBase[slot * RADIATION_STEPS + step] = known < 0 ? length : known;
+      if (known >= 0) continue;
+      parts.push(silent);
+      length += silent.length;
+    }
+  });
+  const silent = sharedDoubles(length);
+  let at = 0;
+  for (const part of parts) {
+    silent.set(part, at);
+    at += part.length;
+  }
+  return { silent, silentBase };
 }
 
 /** Half octaves: 1, 1.5, 2, 3, 4, 6 … keV. */

@@ -4,8 +4,8 @@
  * From mass depth d (g/cm²) to the nearest face of its layer, a photon of energy E gets out with a probability of
  * about E₂(κ d)/2 at most, κ = √(μ_photoelectric μ_total): exact for a pure absorber, and below the diffusion
  * coefficient √(3 μ_a (μ_a + μ_s)) of a medium that scatters. κ is taken at its least over all energies up to E, so that
- * an edge opens no window. At κ d = 12 the probability is below 3e-7, and what does get out of a layer comes from
- * within a few mean free paths of its faces, e^12 times nearer: no tally can show the difference. It saves most of
+ * an edge opens no window. At κ d = 10 the probability is below 2e-6, and what does get out of a layer comes from
+ * within a few mean free paths of its faces, e^10 times more often: no tally can show the difference. It saves most of
  * the work on fluorescence and bremsstrahlung, which are born in numbers and go nowhere.
  *
  * A table per slot gives the local cutoff by the bits of d: four steps per octave, read at the lower bound.
@@ -21,10 +21,11 @@ export const DEPTH_OFFSET = (1023 + LOWEST_EXPONENT) << STEP_BITS;
 /** Up to 2^34 g/cm². */
 export const DEPTH_STEPS = 64 << STEP_BITS;
 /** Optical depth from which a photon counts as unable to get out. */
-const TRAPPED_DEPTH = 12;
+const TRAPPED_DEPTH = 10;
 
 /** Emission cutoffs for bremsstrahlung, keV: the highest one below the local cutoff is taken. The first is the problem's. */
 export const RADIATION_CUTOFFS_KEV = [0, 5, 10, 20, 40, 70, 110, 160, 230, 330, 480, 700] as const;
+export const RADIATION_STEPS = RADIATION_CUTOFFS_KEV.length;
 
 export interface LocalCutoffs {
   /** Local cutoff in keV by slot and step of mass depth. */

@@ -9,6 +9,7 @@ import type { EnergyGrid } from './energy-grid.js';
 import type { EmissionTable } from './emission.js';
 import type { TallyLayout } from './tally-layout.js';
 import type { SourceShape } from './setup.js';
+import type { DeepProblem } from './deep-choice.js';
 import type { SolidProblem } from './solid-source.js';
 
 /**
@@ -18,7 +19,7 @@ import type { SolidProblem } from './solid-source.js';
 export const CELL_LENGTH = 8;
 
 /** Which history loop plays the problem: chosen once per run, so that infinite stacks pay nothing for finite ones. */
-export type Kernel = 'slab' | 'solid';
+export type Kernel = 'slab' | 'solid' | 'deep';
 
 export interface Problem {
   readonly kernel: Kernel;
@@ -58,6 +59,8 @@ export interface Problem {
   readonly channelBase: Int32Array;
   readonly channelCount: Int32Array;
   readonly channelShell: Int32Array;
+  /** Highest binding energy among the followed shells a photon can reach, by slot and cell; 0 without any. */
+  readonly reachableKeV: Float64Array;
   readonly channelTable: Float64Array;
   readonly channelTableBase: Int32Array;
   readonly relaxation: RelaxationTables;
@@ -65,12 +68,21 @@ export interface Problem {
   /** Per slot, one table per emission cutoff of local-cutoff.ts; empty where nothing radiates. */
   readonly bremsstrahlung: readonly (readonly BremsstrahlungTables[])[];
 
+  /** Chances that an electron radiates nothing, of all tables by energy bucket; where each table's start. */
+  readonly silent: Float64Array;
+  readonly silentBase: Int32Array;
+
   readonly densityOfSlot: Float64Array;
   readonly localCutoffKeV: Float64Array;
   readonly radiationStep: Int32Array;
 
   /** Only where layers have edges. */
   readonly solid: SolidProblem | null;
+
+  /** Dose per fluence; see dose-lines.ts. */
+  readonly doseLines: Float64Array;
+  /** What steers deep transport; null in analog. */
+  readonly deep: DeepProblem | null;
 
   readonly tally: TallyLayout;
 }

@@ -1,19 +1,20 @@
 /**
  * The history loop for laterally infinite stacks: analog transport in depth z and direction cosine w alone.
  *
- * Hot code. State lives in locals; the random stream (alea, see random.ts), the logarithm of the flight and the cosine
- * of the azimuth are written out because a call for each costs as much as the work around it, and free-electron
- * scattering is written out for runs with plain physics (measured: through `interact` such runs lose a quarter of
- * their speed). Everything else that happens at a collision is `interact`'s.
+ * Hot code. State lives in locals; the random stream (alea, see random.ts), the logarithm of the flight, the cosine of
+ * the azimuth, incoherent scattering and its Doppler broadening are written out, because a call for each costs as much
+ * as the work around it (measured: through `interact` plain physics loses a quarter of its speed, all physics half).
+ * What is rarer is played by the functions of interact.ts. A test holds this loop against them.
  */
 import { BUCKET_OFFSET, BUCKET_SHIFT } from './energy-grid.js';
 import { MAX_TOUCHED, type BatchTally } from './batch-tally.js';
-import { ELECTRON_REST_KEV } from './constants.js';
+import { ELECTRON_REST_KEV, PAIR_THRESHOLD_KEV } from './constants.js';
 import { lineEnergyKeV, pickLine } from './emission.js';
 import { AZIMUTH_COSINE, AZIMUTH_STEPS, LOG_INVERSE, LOG_NEGATIVE, POWER_OF_TWO } from './lookup-tables.js';
-import { DEPTH_OFFSET, DEPTH_SHIFT, DEPTH_STEPS } from './local-cutoff.js';
+import { DEPTH_OFFSET, DEPTH_SHIFT, DEPTH_STEPS, RADIATION_STEPS } from './local-cutoff.js';
 import { COLUMNS, ROW_LENGTH, ROW_OFFSET, ROW_SHIFT } from './physics/incoherent.js';
-import { interact, type Site } from './physics/interact.js';
+import { absorb, producePair, radiateRecoil, scatterCoherently, type Site } from './physics/interact.js';
+import { MAX_TRIES, MOMENTUM_LIMIT, PROFILE_STEPS } from './physics/doppler.js';
 import { CELL_LENGTH, type Problem } from './problem.js';
 import { ALEA_CARRY, ALEA_MULTIPLIER, nextUniform } from './random.js';
 import { startInSlab, type SlabStart } from './slab-source.js';
@@ -28,10 +29,12 @@ const FULL_ENERGY = 1 - 1e-9;
 const LEFT_FAR = 1;
 const LEFT_FRONT = 2;
 const ABSORBED = 3;
-const COLLIDED = 4;
+/** From here on: collisions that set photons free or need a rarer law, played by the functions of interact.ts. */
+const ABSORBING = 4;
+const COHERENT = 5;
+const PAIR = 6;
+const RADIATING = 7;
 
-/** Scores kept free for one photon of plain physics, whose collisions are not checked one by one. */
-const TOUCH_MARGIN = 4096;
 const TOO_MANY_WAITING = `more than ${STACK_DEPTH} photons waiting in one history`;
 const TOO_MANY_SCORES = `more than ${MAX_TOUCHED} scores in one history`;
 
@@ -55,6 +58,9 @@ function turnCosine(w: number, cosine: number, u: number): number {
 export function runSlabBatch(problem: Problem, histories: number, site: Site, tally: BatchTally): void {
   const { boundariesCm, cells, cellCount, cutoffKeV, emission, incoherent, incoherentBase, layers, plain } =
     problem;
+  const { reachableKeV, dopplerBase, dopplerCount, dopplerTopKeV, silent, silentBase } = problem;
+  const { alias, bindingKeV, keep, momenta, profile } = problem.doppler;
+  const radiates = silent.length > 0;
   const { slotOfLayer, densityOfSlot, localCutoffKeV, radiationStep } = problem;
   const { nodesKeV, firstCell } = problem.grid;
   const { binGuide, binScale, unevenBins, edgesKeV, detectorOfLayer, bins, lines } = tally.layout;
@@ -114,6 +120,9 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
       let event = 0;
       let cell = 0;
       let slot = 0;
+      let depth = 0;
+      let v = 0;
+      let scatteredKeV = 0;
       for (;;) {
         // Cell of the energy grid.
         doubleView[0] = energyKeV;
@@ -174,86 +183,178 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
         }
         if (event !== 0) break;
         collided = true;
+
+        // What cannot get out of the layer from here deposits on the spot (local-cutoff.ts).
+        let lowestKeV = cutoffKeV;
+        depth = slot * DEPTH_STEPS;
         if (!plain) {
-          event = COLLIDED;
-          break;
+          const toFront = z - boundariesCm[layer];
+          const toFar = boundariesCm[layer + 1] - z;
+          doubleView[0] = (toFront < toFar ? toFront : toFar) * densityOfSlot[slot];
+          const step = (wordView[1] >>> DEPTH_SHIFT) - DEPTH_OFFSET;
+          if (step > 0) depth += step < DEPTH_STEPS ? step : DEPTH_STEPS - 1;
+          lowestKeV = localCutoffKeV[depth];
         }
 
-        // Plain physics: absorption, or free-electron scattering by the table of incoherent.ts.
+        // Which process.
         t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
         s0 = s1;
         s1 = s2;
         carry = Math.floor(t);
         s2 = t - carry;
-        let depositedKeV = energyKeV;
-        if (s2 < cells[at + 2] + cells[at + 3] * energyKeV) {
-          event = ABSORBED;
-        } else {
-          t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
-          s0 = s1;
-          s1 = s2;
-          carry = Math.floor(t);
-          s2 = t - carry;
-          let part = Math.sqrt(s2) * COLUMNS;
-          const column = part | 0;
-          part -= column;
-          const lower = incoherentBase[slot] + ((high >>> ROW_SHIFT) - ROW_OFFSET) * ROW_LENGTH + column;
-          const upper = lower + ROW_LENGTH;
-          const betweenRows = (high & ((1 << ROW_SHIFT) - 1)) * (1 / (1 << ROW_SHIFT));
-          const low = incoherent[lower] + part * (incoherent[lower + 1] - incoherent[lower]);
-          const up = incoherent[upper] + part * (incoherent[upper + 1] - incoherent[upper]);
-          const s = low + betweenRows * (up - low);
-          // v = s / (1 + k) and the energy ratio 1 / (1 + 2 k v) by one division.
-          const k = energyKeV * (1 / ELECTRON_REST_KEV);
-          const spread = 1 + k + 2 * k * s;
-          const inverse = 1 / ((1 + k) * spread);
-          const v = s * spread * inverse;
-          const scatteredKeV = energyKeV * (1 + k) * (1 + k) * inverse;
-          if (scatteredKeV < cutoffKeV) {
-            event = ABSORBED;
-          } else {
-            depositedKeV = energyKeV - scatteredKeV;
-            energyKeV = scatteredKeV;
-            // New direction: the azimuth is uniform and only its cosine enters.
+        const pick = s2;
+        if (pick < cells[at + 2] + cells[at + 3] * energyKeV) {
+          // A call is needed where a shell's photon could get out, or the photoelectron may radiate: its chance of
+          // silence is at least that of an electron with all the energy.
+          let called = reachableKeV[slot * cellCount + cell] > lowestKeV;
+          if (radiates && energyKeV > lowestKeV) {
             t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
             s0 = s1;
             s1 = s2;
             carry = Math.floor(t);
             s2 = t - carry;
-            let turn = s2 * AZIMUTH_STEPS;
-            const step = turn | 0;
-            turn -= step;
-            const azimuth = AZIMUTH_COSINE[step] + turn * (AZIMUTH_COSINE[step + 1] - AZIMUTH_COSINE[step]);
-            const sine = 4 * v * (1 - v) * (1 - w * w);
-            w = w * (1 - 2 * v) + (sine > 0 ? Math.sqrt(sine) * azimuth : 0);
+            const bucket = (high >>> BUCKET_SHIFT) - BUCKET_OFFSET;
+            if (s2 >= silent[silentBase[slot * RADIATION_STEPS + radiationStep[depth]] + bucket])
+              called = true;
+          }
+          if (called) {
+            event = ABSORBING;
+            break;
+          }
+          deposited[layer] += energyKeV;
+          event = ABSORBED;
+          break;
+        }
+        if (pick >= cells[at + 4] + cells[at + 5] * energyKeV) {
+          event =
+            energyKeV <= PAIR_THRESHOLD_KEV || pick < cells[at + 6] + cells[at + 7] * energyKeV
+              ? COHERENT
+              : PAIR;
+          break;
+        }
+
+        // Incoherent scattering: v = (1 − cos θ)/2 by the table of incoherent.ts.
+        t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
+        s0 = s1;
+        s1 = s2;
+        carry = Math.floor(t);
+        s2 = t - carry;
+        let part = Math.sqrt(s2) * COLUMNS;
+        const column = part | 0;
+        part -= column;
+        const lower = incoherentBase[slot] + ((high >>> ROW_SHIFT) - ROW_OFFSET) * ROW_LENGTH + column;
+        const upper = lower + ROW_LENGTH;
+        const betweenRows = (high & ((1 << ROW_SHIFT) - 1)) * (1 / (1 << ROW_SHIFT));
+        const low = incoherent[lower] + part * (incoherent[lower + 1] - incoherent[lower]);
+        const up = incoherent[upper] + part * (incoherent[upper + 1] - incoherent[upper]);
+        const s = low + betweenRows * (up - low);
+        // v = s / (1 + k) and the energy ratio 1 / (1 + 2 k v) by one division.
+        const k = energyKeV * (1 / ELECTRON_REST_KEV);
+        const spread = 1 + k + 2 * k * s;
+        const inverse = 1 / ((1 + k) * spread);
+        v = s * spread * inverse;
+        scatteredKeV = energyKeV * (1 + k) * (1 + k) * inverse;
+
+        // Doppler broadening, the law and the draws of doppler.ts.
+        const shells = dopplerCount[slot];
+        if (shells > 0 && energyKeV < dopplerTopKeV) {
+          let tries = 0;
+          for (; tries < MAX_TRIES; tries++) {
+            t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
+            s0 = s1;
+            s1 = s2;
+            carry = Math.floor(t);
+            s2 = t - carry;
+            const place = s2 * shells;
+            let shell = dopplerBase[slot] + (place | 0);
+            if (place - (place | 0) >= keep[shell]) shell = alias[shell];
+            t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
+            s0 = s1;
+            s1 = s2;
+            carry = Math.floor(t);
+            s2 = t - carry;
+            const signed = 2 * s2 - 1;
+            const left = energyKeV - bindingKeV[shell];
+            const most = 2 * k * left * v - bindingKeV[shell];
+            // A momentum along the transfer is needed where the transfer alone cannot free the electron.
+            if (left <= 0 || (most < 0 && signed >= 0)) continue;
+            const tail = Math.sqrt(1 - (signed < 0 ? -signed : signed)) * PROFILE_STEPS;
+            const node = profile[shell] + (tail < PROFILE_STEPS ? tail | 0 : PROFILE_STEPS - 1);
+            const size =
+              momenta[node] + (tail - (node - profile[shell])) * (momenta[node + 1] - momenta[node]);
+            const bound = bindingKeV[shell] * bindingKeV[shell] + 4 * energyKeV * left * v;
+            const limit = most * most - size * size * bound;
+            if (signed < 0 ? size >= MOMENTUM_LIMIT || (most < 0 && limit > 0) : limit < 0) continue;
+            const p2 = size * size;
+            const a = 1 + 2 * k * v;
+            const b = a - p2 * (1 - 2 * v);
+            const root = Math.sqrt(Math.max(0, b * b - (a * a - p2) * (1 - p2)));
+            scatteredKeV = (energyKeV * (signed < 0 ? b - root : b + root)) / (a * a - p2);
+            break;
+          }
+          if (tries === MAX_TRIES) site.dopplerGivenUp++;
+        }
+
+        // The recoil electron may radiate: a draw below the chance of no photon settles most cases here.
+        const depositedKeV = energyKeV - scatteredKeV;
+        if (radiates && depositedKeV > lowestKeV) {
+          doubleView[0] = depositedKeV;
+          const bucket = (wordView[1] >>> BUCKET_SHIFT) - BUCKET_OFFSET;
+          t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
+          s0 = s1;
+          s1 = s2;
+          carry = Math.floor(t);
+          s2 = t - carry;
+          if (s2 >= silent[silentBase[slot * RADIATION_STEPS + radiationStep[depth]] + bucket]) {
+            event = RADIATING;
+            break;
           }
         }
+        if (scatteredKeV < lowestKeV) {
+          deposited[layer] += energyKeV;
+          event = ABSORBED;
+          break;
+        }
         deposited[layer] += depositedKeV;
-        if (event !== 0) break;
+        energyKeV = scatteredKeV;
+
+        // New direction: the azimuth is uniform and only its cosine enters.
+        t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
+        s0 = s1;
+        s1 = s2;
+        carry = Math.floor(t);
+        s2 = t - carry;
+        let turn = s2 * AZIMUTH_STEPS;
+        const step = turn | 0;
+        turn -= step;
+        const azimuth = AZIMUTH_COSINE[step] + turn * (AZIMUTH_COSINE[step + 1] - AZIMUTH_COSINE[step]);
+        const sine = 4 * v * (1 - v) * (1 - w * w);
+        w = w * (1 - 2 * v) + (sine > 0 ? Math.sqrt(sine) * azimuth : 0);
       }
 
       let alive = false;
-      if (event === COLLIDED) {
+      if (event >= ABSORBING) {
         random[0] = s0;
         random[1] = s1;
         random[2] = s2;
         random[3] = carry;
-        const toFront = z - boundariesCm[layer];
-        const toFar = boundariesCm[layer + 1] - z;
-        doubleView[0] = (toFront < toFar ? toFront : toFar) * densityOfSlot[slot];
-        let depth = (wordView[1] >>> DEPTH_SHIFT) - DEPTH_OFFSET;
-        if (depth < 0) depth = 0;
-        else if (depth >= DEPTH_STEPS) depth = DEPTH_STEPS - 1;
-        depth += slot * DEPTH_STEPS;
+        secondaries.count = 0;
+        site.energyKeV = energyKeV;
         site.localCutoffKeV = localCutoffKeV[depth];
         site.radiationStep = radiationStep[depth];
-        site.energyKeV = energyKeV;
-        interact(problem, site, slot, cell);
+        if (event === ABSORBING) {
+          absorb(problem, site, slot, cell, s2);
+        } else if (event === COHERENT) {
+          scatterCoherently(problem, site, slot);
+        } else if (event === PAIR) {
+          producePair(problem, site, slot);
+        } else {
+          site.v = v;
+          radiateRecoil(problem, site, slot, scatteredKeV, s2);
+        }
         alive = site.energyKeV > 0;
 
-        // Energy left on the spot.
-        const depositedKeV = site.depositedKeV;
-        deposited[layer] += depositedKeV;
+        deposited[layer] += site.depositedKeV;
 
         // Photons set free wait, with their direction cosine turned from that of the one that came in.
         const emitted = secondaries.count;
@@ -296,7 +397,7 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
         pending[bin]++;
         touched[touchedCount++] = bin;
       }
-      if (touchedCount > MAX_TOUCHED - TOUCH_MARGIN) throw new Error(TOO_MANY_SCORES);
+      if (touchedCount === MAX_TOUCHED) throw new Error(TOO_MANY_SCORES);
 
       // The next photon of the history, if any waits.
       if (!alive) {

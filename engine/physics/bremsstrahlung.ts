@@ -52,10 +52,11 @@ export function sampleBremsstrahlung(
   }
   const u = next();
   if (u < tables.silent[bucketOf(electronKeV)]) return 0;
-  return emit(tables, electronKeV, u, next, out, frames);
+  return emitBremsstrahlung(tables, electronKeV, u, next, out, frames);
 }
 
-function emit(
+/** The same from a first draw `firstUniform` that was not silent. */
+export function emitBremsstrahlung(
   tables: BremsstrahlungTables,
   electronKeV: number,
   firstUniform: number,

@@ -15,7 +15,9 @@ import { nextUniform, type StreamState } from '../random.js';
 export const PROFILE_STEPS = 128;
 export const PROFILE_LENGTH = PROFILE_STEPS + 1;
 /** Refusals after which the free-electron energy is taken; counted, and hardly ever reached. */
-const MAX_TRIES = 1000;
+export const MAX_TRIES = 1000;
+/** Largest momentum against the transfer, m c: at 1 the photon would keep no energy and the approximation ends. */
+export const MOMENTUM_LIMIT = 0.999;
 
 /** Shells of all materials of a problem, those of one material next to each other. */
 export interface DopplerTables {
@@ -127,8 +129,8 @@ export function sampleDoppler(
     const at = profile[shell] + step;
     const size = momenta[at] + (t - step) * (momenta[at + 1] - momenta[at]);
     const p = signed < 0 ? -size : size;
-    // At p = −m c the photon would keep no energy: the approximation ends there.
-    if (p > -0.999 && p <= maxMomentum(energyKeV, v, binding)) return scatteredEnergy(energyKeV, v, p);
+    if (p > -MOMENTUM_LIMIT && p <= maxMomentum(energyKeV, v, binding))
+      return scatteredEnergy(energyKeV, v, p);
   }
   return 0;
 }

@@ -3,9 +3,10 @@
  * what is set free. The history loops call it at each collision; they own flight, geometry and tallies.
  */
 import { ELECTRON_REST_KEV, PAIR_THRESHOLD_KEV } from '../constants.js';
+import { bucketOf } from '../energy-grid.js';
 import { CELL_LENGTH, type Problem } from '../problem.js';
-import { nextOpenUniform, nextUniform, type StreamState } from '../random.js';
-import { MAX_ELECTRON_PHOTONS, sampleBremsstrahlung } from './bremsstrahlung.js';
+import { ALEA_CARRY, nextOpenUniform, nextUniform, type StreamState } from '../random.js';
+import { emitBremsstrahlung, MAX_ELECTRON_PHOTONS, type BremsstrahlungTables } from './bremsstrahlung.js';
 import { sampleCoherent } from './coherent.js';
 import { sampleDoppler } from './doppler.js';
 import { comptonEnergyRatio } from './klein-nishina.js';
@@ -55,7 +56,7 @@ export function interact(problem: Problem, site: Site, slot: number, cell: numbe
   const pick = nextUniform(site.random);
   site.secondaries.count = 0;
   if (pick < cells[at + 2] + cells[at + 3] * energyKeV) {
-    absorb(problem, site, slot, cell);
+    absorb(problem, site, slot, cell, nextUniform(site.random));
     return PHOTOELECTRIC;
   }
   if (pick < cells[at + 4] + cells[at + 5] * energyKeV) {
@@ -63,8 +64,7 @@ export function interact(problem: Problem, site: Site, slot: number, cell: numbe
     return INCOHERENT;
   }
   if (energyKeV <= PAIR_THRESHOLD_KEV || pick < cells[at + 6] + cells[at + 7] * energyKeV) {
-    site.v = sampleCoherent(problem.coherent, problem.coherentBase[slot], energyKeV, site.random);
-    site.depositedKeV = 0;
+    scatterCoherently(problem, site, slot);
     return COHERENT;
   }
   producePair(problem, site, slot);
@@ -74,17 +74,19 @@ export function interact(problem: Problem, site: Site, slot: number, cell: numbe
 /** As `interact`, of a kind chosen by the caller; it must be possible at this energy. */
 export function interactAs(kind: number, problem: Problem, site: Site, slot: number, cell: number): void {
   site.secondaries.count = 0;
-  if (kind === PHOTOELECTRIC) absorb(problem, site, slot, cell);
+  if (kind === PHOTOELECTRIC) absorb(problem, site, slot, cell, nextUniform(site.random));
   else if (kind === INCOHERENT) scatter(problem, site, slot);
   else if (kind === PAIR) producePair(problem, site, slot);
   else {
-    site.v = sampleCoherent(problem.coherent, problem.coherentBase[slot], site.energyKeV, site.random);
-    site.depositedKeV = 0;
+    scatterCoherently(problem, site, slot);
   }
 }
 
-/** Photoelectric absorption: the shell of the vacancy, its relaxation, the photoelectron. */
-function absorb(problem: Problem, site: Site, slot: number, cell: number): void {
+/**
+ * Photoelectric absorption: the shell of the vacancy, its relaxation, the photoelectron. `silence` is the uniform draw
+ * that decides whether the photoelectron radiates.
+ */
+export function absorb(problem: Problem, site: Site, slot: number, cell: number, silence: number): void {
   const energyKeV = site.energyKeV;
   let electronKeV = energyKeV;
   let emittedKeV = 0;
@@ -109,10 +111,36 @@ function absorb(problem: Problem, site: Site, slot: number, cell: number): void 
       }
     }
   }
-  const photons = brake(problem, site, slot, electronKeV);
+  const photons = brake(problem, site, slot, electronKeV, silence);
   if (photons > 0) emittedKeV += release(site, photons, samplePhotoelectronCosine(electronKeV, site.random));
   site.energyKeV = 0;
   site.depositedKeV = energyKeV - emittedKeV;
+}
+
+/** Coherent scattering: a new direction and nothing else. */
+export function scatterCoherently(problem: Problem, site: Site, slot: number): void {
+  site.v = sampleCoherent(problem.coherent, problem.coherentBase[slot], site.energyKeV, site.random);
+  site.depositedKeV = 0;
+}
+
+/**
+ * The rest of an incoherent scattering whose recoil electron radiates: `silence` was not below its chance of no photon,
+ * `site.v` is the angle.
+ */
+export function radiateRecoil(
+  problem: Problem,
+  site: Site,
+  slot: number,
+  scatteredKeV: number,
+  silence: number,
+): void {
+  const { energyKeV } = site;
+  const electronKeV = energyKeV - scatteredKeV;
+  const photons = brake(problem, site, slot, electronKeV, silence);
+  const emittedKeV = release(site, photons, recoilCosine(energyKeV, site.v));
+  const goesOn = scatteredKeV >= site.localCutoffKeV;
+  site.energyKeV = goesOn ? scatteredKeV : 0;
+  site.depositedKeV = (goesOn ? electronKeV : energyKeV) - emittedKeV;
 }
 
 /** Incoherent scattering: angle, Doppler-broadened energy, recoil electron. */
@@ -139,7 +167,7 @@ function scatter(problem: Problem, site: Site, slot: number): void {
     else site.dopplerGivenUp++;
   }
   const electronKeV = energyKeV - scatteredKeV;
-  const photons = brake(problem, site, slot, electronKeV);
+  const photons = brake(problem, site, slot, electronKeV, nextUniform(site.random));
   const emittedKeV = photons > 0 ? release(site, photons, recoilCosine(energyKeV, v)) : 0;
   site.v = v;
   if (scatteredKeV >= site.localCutoffKeV) {
@@ -152,14 +180,18 @@ function scatter(problem: Problem, site: Site, slot: number): void {
 }
 
 /** Pair production (in the field of nucleus or electron alike): two 511 keV quanta back to back, isotropic. */
-function producePair(problem: Problem, site: Site, slot: number): void {
+export function producePair(problem: Problem, site: Site, slot: number): void {
   const energyKeV = site.energyKeV;
   const kineticKeV = energyKeV - PAIR_THRESHOLD_KEV;
   // The kinetic energy is shared evenly at random: the Bethe–Heitler spectrum is nearly flat.
   const electronKeV = kineticKeV * nextUniform(site.random);
   // At the energies that radiate, both fly forward: their mean angle is about m c² / E.
-  let emittedKeV = release(site, brake(problem, site, slot, electronKeV), 1);
-  emittedKeV += release(site, brake(problem, site, slot, kineticKeV - electronKeV), 1);
+  let emittedKeV = release(site, brake(problem, site, slot, electronKeV, nextUniform(site.random)), 1);
+  emittedKeV += release(
+    site,
+    brake(problem, site, slot, kineticKeV - electronKeV, nextUniform(site.random)),
+    1,
+  );
   if (site.localCutoffKeV <= ELECTRON_REST_KEV) {
     const cosine = 2 * nextUniform(site.random) - 1;
     site.secondaries.push(ELECTRON_REST_KEV, cosine, 0);
@@ -170,13 +202,22 @@ function producePair(problem: Problem, site: Site, slot: number): void {
   site.depositedKeV = energyKeV - emittedKeV;
 }
 
-/** Slows an electron (or positron: same yields) down to rest; its photons, if any, are in `site.electronPhotons`. */
-function brake(problem: Problem, site: Site, slot: number, electronKeV: number): number {
-  if (electronKeV <= site.localCutoffKeV) return 0;
+/** Bremsstrahlung tables with the emission cutoff of this place. */
+function radiationOf(problem: Problem, site: Site, slot: number): BremsstrahlungTables {
   const radiation = problem.bremsstrahlung[slot];
-  if (radiation.length === 0) return 0;
-  const tables = radiation[Math.min(site.radiationStep, radiation.length - 1)];
-  return sampleBremsstrahlung(tables, electronKeV, site.next, site.electronPhotons, site.electronFrames);
+  return radiation[Math.min(site.radiationStep, radiation.length - 1)];
+}
+
+/**
+ * Slows an electron (or positron: same yields) down to rest; its photons, if any, are in `site.electronPhotons`. A
+ * `silence` below the chance of no photon ends it.
+ */
+function brake(problem: Problem, site: Site, slot: number, electronKeV: number, silence: number): number {
+  if (electronKeV <= site.localCutoffKeV || problem.bremsstrahlung[slot].length === 0) return 0;
+  const tables = radiationOf(problem, site, slot);
+  if (silence < tables.silent[bucketOf(electronKeV)]) return 0;
+  const first = silence + 0.5 * ALEA_CARRY;
+  return emitBremsstrahlung(tables, electronKeV, first, site.next, site.electronPhotons, site.electronFrames);
 }
 
 /** Sets an electron's photons free; `cosine` is that of the electron's direction. Returns their energy. */
