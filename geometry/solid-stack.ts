@@ -191,8 +191,8 @@ function clipChord(at: number, slope: number, half: number): void {
 }
 
 /**
- * Moves a ray that is in no layer to the first one it meets among layer `from` and those behind it, in the order of
- * its travel.
+ * Moves a ray that is in no layer, and before layer `from` on its way, to the first one it meets among that and those
+ * behind it.
  *
  * @returns the layer it enters, or NEVER (then it has not been moved)
  */

@@ -12,13 +12,15 @@ export interface Books {
   readonly spectra: readonly Spectrum[];
   /** Mean energy of the source per history, weight included. */
   readonly energyInKeV: number;
+  /** Photons that came in, where not all do so by the front face. */
+  readonly photonsIn?: number;
 }
 
 /** Relative rounding allowed in sums of very many terms. */
 const ROUNDING = 1e-9;
 
 /** Fails when the books do not close. */
-export function checkBooks({ setup, totals, spectra, energyInKeV }: Books): void {
+export function checkBooks({ setup, totals, spectra, energyInKeV, photonsIn }: Books): void {
   const mean = (quantity: string, layer: string | null = null) =>
     totals.find((row) => row.quantity === quantity && row.layer === layer && row.lineKeV === null)?.mean ?? 0;
   const all = (quantity: string) =>
@@ -42,7 +44,9 @@ export function checkBooks({ setup, totals, spectra, energyInKeV }: Books): void
   // Photons: none leaves that did not come in, unless new ones are set free.
   const { fluorescence, pair, bremsstrahlung } = setup.physics;
   const outPhotons = mean('transmitted') + mean('reflected') + mean('side_escape');
-  if (!fluorescence && !pair && !bremsstrahlung) atMost('photons out', outPhotons, mean('incident'));
+  const inPhotons = photonsIn ?? mean('incident');
+  if (!fluorescence && !pair && !bremsstrahlung) atMost('photons out', outPhotons, inPhotons);
+  atMost('photons at the front face', mean('incident'), inPhotons);
   atMost('uncollided photons', mean('uncollided'), mean('transmitted'));
 
   for (const spectrum of spectra) checkSpectrum(spectrum, mean, near, atMost);

@@ -1,4 +1,5 @@
 /** Plays slab setups in this thread and checks the books of every one of them. */
+import { expect } from 'vitest';
 import { playBatch } from '../../engine/batch-worker.js';
 import { compile } from '../../engine/compile.js';
 import type { Problem } from '../../engine/problem.js';
@@ -119,6 +120,7 @@ export function playSetup(setup: Setup, problem: Problem): Played {
     figureSquare: new Float64Array(problem.tally.figures),
   };
   let dopplerGivenUp = 0;
+  let strayed = 0;
   for (let batch = 0; batch * BATCH < histories; batch++) {
     const result = playBatch(problem, batch, Math.min(BATCH, histories - batch * BATCH));
     for (const name of ['cellSum', 'cellSquare', 'figureSum', 'figureSquare'] as const) {
@@ -126,6 +128,7 @@ export function playSetup(setup: Setup, problem: Problem): Played {
       for (let i = 0; i < to.length; i++) to[i] += from[i];
     }
     dopplerGivenUp += result.dopplerGivenUp;
+    strayed += result.strayed;
   }
   const { historyWeight, tally: layout } = problem;
   const figures = { setup, layout, historyWeight, histories, sums };
@@ -137,10 +140,11 @@ export function playSetup(setup: Setup, problem: Problem): Played {
     sums,
     dopplerGivenUp,
   };
-  checkBooks({
-    ...played,
-    energyInKeV: (historyWeight * sums.figureSum[FIGURE.sourceEnergy]) / histories,
-  });
+  expect(strayed, 'photons outside their layer').toBe(0);
+  const energyInKeV = (historyWeight * sums.figureSum[FIGURE.sourceEnergy]) / histories;
+  const { lines } = setup.source.emission;
+  const photonsIn = lines.length === 1 ? energyInKeV / lines[0].energyKeV : undefined;
+  checkBooks({ ...played, energyInKeV, photonsIn });
   return played;
 }
 
