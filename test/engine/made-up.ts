@@ -23,7 +23,16 @@ export function withCrossSections(problem: Problem, given: MadeUp, fromKeV = 0):
     cells[at + 4] = photoelectric + incoherent;
     cells[at + 6] = photoelectric + incoherent + coherent;
   }
-  return { ...problem, cells };
+  return { ...withoutLocalCutoffs(problem), cells };
+}
+
+/** A copy of the problem in which every photon above the cutoff is followed, wherever it is born. */
+export function withoutLocalCutoffs(problem: Problem): Problem {
+  return {
+    ...problem,
+    localCutoffKeV: problem.localCutoffKeV.map(() => problem.cutoffKeV),
+    radiationStep: problem.radiationStep.map(() => 0),
+  };
 }
 
 /**
