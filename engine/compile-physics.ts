@@ -15,11 +15,17 @@ import {
 import { atNodes, compositionKey, fillLines, type Slot } from './compile-slots.js';
 import type { EnergyGrid } from './energy-grid.js';
 import { RADIATION_CUTOFFS_KEV } from './local-cutoff.js';
-import { makeBremsstrahlungTables, type BremsstrahlungTables } from './physics/bremsstrahlung.js';
+import { makeBremsstrahlungTables, type BremsstrahlungTables } from './physics/bremsstrahlung-tables.js';
 import { COHERENT_LENGTH, fillCoherentTable } from './physics/coherent.js';
 import { fillAlias, fillProfile, PROFILE_LENGTH, type DopplerTables } from './physics/doppler.js';
-import { fillIncoherentTable, incoherentRows, ROW_LENGTH, type Scatterer } from './physics/incoherent.js';
-import { logSampled } from './physics/log-sampled.js';
+import {
+  BINDING_GRID,
+  fillIncoherentTable,
+  incoherentRows,
+  ROW_LENGTH,
+  type Scatterer,
+} from './physics/incoherent.js';
+import { logSampled, logSamples } from './physics/log-sampled.js';
 import { makeRelaxationTables, type RelaxationTables } from './physics/relaxation.js';
 import { sharedDoubles, sharedInts } from './problem.js';
 import type { Physics } from './setup.js';
@@ -30,22 +36,24 @@ const DOPPLER_TOP_KEV = 1000;
 /** Just below an edge. */
 const BELOW = 1 - 1e-12;
 
-const boundFunctions = new Map<number, (x: number) => number>();
+const bindings = new Map<number, Float64Array>();
 const formFactors = new Map<number, (x: number) => number>();
+/** Momentum transfers (1/Å) at which form factors are sampled. */
+const FORM_FACTOR_GRID = { low: 1e-3, high: 2000, nodes: 900 };
 
-function cached(map: Map<number, (x: number) => number>, z: number, make: () => (x: number) => number) {
+function cached<T>(map: Map<number, T>, z: number, make: () => T): T {
   let known = map.get(z);
-  if (!known) map.set(z, (known = make()));
+  if (known === undefined) map.set(z, (known = make()));
   return known;
 }
 
-/** S(x)/Z of an element, quick to evaluate. */
-function boundFunction(z: number): (x: number) => number {
-  return cached(boundFunctions, z, () => logSampled((x) => incoherentFunctionAt(z, x) / z, 1e-3, 2000, 900));
+/** S(x)/Z of an element on the grid of the angle tables. */
+function bindingOf(z: number): Float64Array {
+  return cached(bindings, z, () => logSamples((x) => incoherentFunctionAt(z, x) / z, BINDING_GRID));
 }
 
 function formFactor(z: number): (x: number) => number {
-  return cached(formFactors, z, () => logSampled((x) => formFactorAt(z, x), 1e-3, 2000, 900));
+  return cached(formFactors, z, () => logSampled((x) => formFactorAt(z, x), FORM_FACTOR_GRID));
 }
 
 export interface ScatteringTables {
@@ -69,7 +77,7 @@ export function makeScatteringTables(
   const incoherent = sharedDoubles(incoherentCount * rows * ROW_LENGTH);
   const coherent = sharedDoubles(physics.coherent ? compositions.length * COHERENT_LENGTH : 1);
   if (!physics.boundIncoherent) {
-    fillIncoherentTable([{ shareAt: () => 1, bindingAt: null }], rows, incoherent);
+    fillIncoherentTable([{ shareAt: () => 1, binding: null }], rows, incoherent);
   }
   compositions.forEach((slot, c) => {
     if (physics.boundIncoherent) {
@@ -105,7 +113,7 @@ export function makeScatteringTables(
 function scatterers(constituents: readonly Constituent[]): Scatterer[] {
   return constituents.map(({ z, massFraction }) => ({
     shareAt: (energyKeV) => massFraction * elementCoefficients(z, Math.min(energyKeV, 20_000)).incoherent,
-    bindingAt: boundFunction(z),
+    binding: bindingOf(z),
   }));
 }
 

@@ -17,7 +17,7 @@ import {
 } from './compile-physics.js';
 import { compositionKey, gridOf, makeCells, type Slot } from './compile-slots.js';
 import type { EnergyGrid } from './energy-grid.js';
-import type { BremsstrahlungTables } from './physics/bremsstrahlung.js';
+import type { BremsstrahlungTables } from './physics/bremsstrahlung-tables.js';
 import { makeLocalCutoffs, RADIATION_STEPS, type LocalCutoffs } from './local-cutoff.js';
 import { CELL_LENGTH, sharedDoubles, sharedInts } from './problem.js';
 import { MAX_ENERGY_KEV, type Physics } from './setup.js';

@@ -2,7 +2,7 @@
  * The compiled problem: everything a worker needs, as typed arrays in shared memory, made once per run from the setup.
  * Layers refer to slots; a slot is one material at one density. Vacuum is a slot whose coefficients are 0.
  */
-import type { BremsstrahlungTables } from './physics/bremsstrahlung.js';
+import type { BremsstrahlungTables } from './physics/bremsstrahlung-tables.js';
 import type { DopplerTables } from './physics/doppler.js';
 import type { RelaxationTables } from './physics/relaxation.js';
 import type { EnergyGrid } from './energy-grid.js';

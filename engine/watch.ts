@@ -42,9 +42,10 @@ export function watchFor(setup: Setup, problem: Problem): Watch {
 }
 
 function rowFor(rows: readonly QuantityRow[], until: Until): QuantityRow {
-  const row = rows.find(
+  const candidates = rows.filter(
     ({ quantity, layer }) => quantity === until.quantity && (until.layer === null || layer === until.layer),
   );
+  const row = allLines(candidates);
   if (!row) {
     const where = until.layer === null ? '' : ` in layer ${until.layer}`;
     throw new EngineError('unsupported', `until: this setup gives no ${until.quantity}${where}`);
@@ -52,8 +53,13 @@ function rowFor(rows: readonly QuantityRow[], until: Until): QuantityRow {
   return row;
 }
 
+/** Of rows of one quantity the one for all source lines together, where there is one. */
+function allLines(rows: readonly QuantityRow[]): QuantityRow | undefined {
+  return rows.find(({ lineKeV }) => lineKeV === null) ?? rows[0];
+}
+
 function leadingRow(rows: readonly QuantityRow[]): QuantityRow | null {
-  const named = (name: string) => rows.find(({ quantity }) => quantity === name);
+  const named = (name: string) => allLines(rows.filter(({ quantity }) => quantity === name));
   return named('full_energy') ?? named('transmitted') ?? null;
 }
 

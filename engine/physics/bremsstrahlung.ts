@@ -13,8 +13,6 @@ import { ELECTRON_REST_KEV } from '../constants.js';
 import { bucketOf } from '../energy-grid.js';
 import type { BremsstrahlungTables } from './bremsstrahlung-tables.js';
 
-export { makeBremsstrahlungTables, type BremsstrahlungTables } from './bremsstrahlung-tables.js';
-
 /**
  * Photons one electron may set free. Their number is below a Poisson variable of mean N, which is 37 at most (Z = 100,
  * 20 MeV, photons from 1 keV): more than 96 happen less than once in 10¹⁵ such electrons.

@@ -9,6 +9,7 @@
  */
 import { ELECTRON_REST_KEV, HC_KEV_ANGSTROM } from '../constants.js';
 import { kleinNishinaShape } from './klein-nishina.js';
+import { logPlace, valueAtPlace, type LogGrid } from './log-sampled.js';
 
 /** 2^4 rows per octave. */
 export const ROW_BITS = 4;
@@ -18,12 +19,15 @@ export const ROW_OFFSET = 1023 << ROW_BITS;
 export const COLUMNS = 128;
 export const ROW_LENGTH = COLUMNS + 1;
 
+/** Momentum transfers x (1/Å) at which binding is sampled. */
+export const BINDING_GRID: LogGrid = { low: 1e-3, high: 2000, nodes: 900 };
+
 /** One element of the mixture that scatters. */
 export interface Scatterer {
   /** Share of the mixture's incoherent cross section at an energy, not normalised. */
   readonly shareAt: (energyKeV: number) => number;
-  /** S(x) / Z with x in 1/Å, or null for free electrons. */
-  readonly bindingAt: ((xPerAngstrom: number) => number) | null;
+  /** S(x) / Z at the nodes of BINDING_GRID, or null for free electrons. */
+  readonly binding: Float64Array | null;
 }
 
 /** Rows needed so that energies up to `topKeV` have a row above them. */
@@ -58,11 +62,11 @@ export function fillIncoherentTable(scatterers: readonly Scatterer[], rows: numb
 /** Integration nodes in v, ascending from 0 to 1: even in log(1 + 2 k v) and in log x, where the two factors turn. */
 function angleNodes(energyKeV: number): Float64Array {
   const k = energyKeV / ELECTRON_REST_KEV;
-  const fineness = 320;
+  const fineness = 200;
   const nodes = [0];
   for (let i = 1; i <= fineness; i++) nodes.push(Math.expm1((i / fineness) * Math.log1p(2 * k)) / (2 * k));
   const xTop = energyKeV / HC_KEV_ANGSTROM;
-  for (let logX = Math.log(2e-3); logX < Math.log(Math.min(xTop, 60)); logX += 0.05) {
+  for (let logX = Math.log(2e-3); logX < Math.log(Math.min(xTop, 60)); logX += 0.06) {
     nodes.push((Math.exp(logX) / xTop) ** 2);
   }
   nodes[fineness] = 1;
@@ -71,17 +75,21 @@ function angleNodes(energyKeV: number): Float64Array {
 
 /** Cumulative of the mixture at the nodes, normalised to 1. */
 function mixedCumulative(scatterers: readonly Scatterer[], energyKeV: number, v: Float64Array): Float64Array {
+  // Densities at the nodes and half-way between them, for Simpson's rule; what all elements share is found once.
+  const points = Float64Array.from({ length: 2 * v.length - 1 }, (_, i) =>
+    i % 2 === 0 ? v[i / 2] : 0.5 * (v[(i - 1) / 2] + v[(i + 1) / 2]),
+  );
+  const free = points.map((at) => kleinNishinaShape(energyKeV, at));
   const xTop = energyKeV / HC_KEV_ANGSTROM;
+  const places = points.map((at) => logPlace(BINDING_GRID, xTop * Math.sqrt(at)));
   const mixed = new Float64Array(v.length);
   const own = new Float64Array(v.length);
-  for (const { shareAt, bindingAt } of scatterers) {
-    const density = (at: number) =>
-      kleinNishinaShape(energyKeV, at) * (bindingAt ? bindingAt(xTop * Math.sqrt(at)) : 1);
-    let left = density(v[0]);
+  for (const { shareAt, binding } of scatterers) {
+    const density = (i: number) => (binding ? free[i] * valueAtPlace(binding, places[i]) : free[i]);
+    let left = density(0);
     for (let i = 1; i < v.length; i++) {
-      const right = density(v[i]);
-      const middle = density(0.5 * (v[i - 1] + v[i]));
-      own[i] = own[i - 1] + ((v[i] - v[i - 1]) * (left + 4 * middle + right)) / 6; // Simpson
+      const right = density(2 * i);
+      own[i] = own[i - 1] + ((v[i] - v[i - 1]) * (left + 4 * density(2 * i - 1) + right)) / 6;
       left = right;
     }
     const share = shareAt(energyKeV) / own[v.length - 1];

@@ -1,8 +1,8 @@
 import { describe, expect, it } from 'vitest';
+import { makeBremsstrahlungTables } from '../../engine/physics/bremsstrahlung-tables.js';
 import {
   MAX_ELECTRON_PHOTONS,
   composeCosines,
-  makeBremsstrahlungTables,
   sampleBremsstrahlung,
 } from '../../engine/physics/bremsstrahlung.js';
 import { transportCoefficient } from '../../engine/physics/electron-scattering.js';

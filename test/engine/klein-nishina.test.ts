@@ -26,7 +26,7 @@ const SAMPLES = 1_000_000;
 const TOP_KEV = 20_000;
 
 const table = new Float64Array(incoherentRows(TOP_KEV) * ROW_LENGTH);
-fillIncoherentTable([{ shareAt: () => 1, bindingAt: null }], incoherentRows(TOP_KEV), table);
+fillIncoherentTable([{ shareAt: () => 1, binding: null }], incoherentRows(TOP_KEV), table);
 
 /** v = (1 − cos θ)/2 of many scatterings of free electrons. */
 function sampledV(energyKeV: number): Float64Array {

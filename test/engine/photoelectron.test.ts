@@ -67,7 +67,7 @@ describe('a function sampled on an even grid of the logarithm', () => {
     { title: 'S of lead', f: (x: number) => incoherentFunctionAt(82, x) },
     { title: 'S of carbon', f: (x: number) => incoherentFunctionAt(6, x) },
   ])('gives $title within 0.3 %', ({ f }) => {
-    const sampled = logSampled(f, 1e-3, 2000, 900);
+    const sampled = logSampled(f, { low: 1e-3, high: 2000, nodes: 900 });
     for (let x = 2e-4; x < 1900; x *= 1.0137) {
       expect(Math.abs(sampled(x) / f(x) - 1), `x = ${x}`).toBeLessThan(3e-3);
     }
