@@ -35,6 +35,23 @@ export function withoutLocalCutoffs(problem: Problem): Problem {
   };
 }
 
+/** A copy of the problem in which photons are absorbed as they are, and do nothing else. */
+export function withAbsorptionAlone(problem: Problem): Problem {
+  const cells = new Float64Array(problem.cells.length);
+  const { nodesKeV } = problem.grid;
+  for (let at = 0; at < cells.length; at += CELL_LENGTH) {
+    const cell = (at / CELL_LENGTH) % problem.cellCount;
+    const [low, high] = [nodesKeV[cell], nodesKeV[cell + 1]];
+    const line = (offset: number, energyKeV: number) =>
+      problem.cells[at + offset] + problem.cells[at + offset + 1] * energyKeV;
+    const [left, right] = [line(0, low) * line(2, low), line(0, high) * line(2, high)];
+    cells[at + 1] = high > low ? (right - left) / (high - low) : 0;
+    cells[at] = left - cells[at + 1] * low;
+    cells[at + 2] = cells[at + 4] = cells[at + 6] = 1;
+  }
+  return { ...problem, cells };
+}
+
 /**
  * A source energy just above a power of two: it stands at the very start of a cell of the energy grid, so that with
  * `withCrossSections(…, energy)` a photon collides once, at the surface, and whatever comes of it flies out freely.
