@@ -91,6 +91,12 @@ export const errors = {
       `${directory}: exists already`,
       'choose another folder with --out or replace it with --overwrite',
     ),
+  outputUnfinished: (directory: string) =>
+    new ThicksetError(
+      'output_exists',
+      `${directory}: holds an unfinished run`,
+      'go on with --resume, replace it with --overwrite, or choose another folder with --out',
+    ),
   outputForeign: (path: string, what: string) =>
     new ThicksetError('output_foreign', `${path}: ${what}`, 'choose another folder with --out'),
   outputNotWritable: (path: string, cause: unknown) =>

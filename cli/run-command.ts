@@ -1,21 +1,31 @@
 /** `thickset run`: setup file in, result folder and summary out. */
 import { availableParallelism } from 'node:os';
-import type { Command } from 'commander';
-import { EngineError, simulate, type RunResult, type Setup, type Warning } from '../engine/index.js';
-import { parseHistories, parseSeed, parseThreads } from './command-options.js';
+import { Option, type Command } from 'commander';
+import { EngineError, playRun, type Run, type Setup, type Shard, type Warning } from '../engine/index.js';
+import { finishedRun, finishedShard } from './checkpoint/finished.js';
+import { runIdentity, type RunIdentity } from './checkpoint/identity.js';
+import { RunFolder } from './checkpoint/run-folder.js';
+import { writeShard } from './checkpoint/shard-file.js';
+import { parseHistories, parseSeed, parseShard, parseThreads, parseTime } from './command-options.js';
 import { fromEngine } from './engine-errors.js';
 import { errors, EXIT_CODES } from './errors.js';
 import { onInterrupt } from './interrupt.js';
-import { checkResultFolder, replaceResult } from './result/result-folder.js';
+import { replaceResult } from './result/result-folder.js';
 import { packResult, type PackedResult } from './result/stored-result.js';
-import { readSetupFile } from './setup-reader.js';
+import { readSetupFile, type SetupFile } from './setup-reader.js';
 import { printResult } from './summary-command.js';
 import { formatCount } from './text/figure-format.js';
 import { showProgress } from './text/progress-line.js';
 
+/** A power cut costs no more work than this, at next to no cost in time. */
+const CHECKPOINT_S = 30;
+
 interface RunCommandOptions {
   readonly out: string;
   readonly overwrite?: boolean;
+  readonly resume?: boolean;
+  readonly shard?: Shard;
+  readonly checkpoint: number;
   readonly json?: boolean;
   readonly quiet?: boolean;
   readonly threads?: number;
@@ -30,6 +40,13 @@ export function registerRunCommand(program: Command): void {
     .argument('<setup>', 'setup file (YAML)')
     .requiredOption('--out <folder>', 'folder for the result')
     .option('--overwrite', 'replace the result that is in the folder')
+    .option('--resume', 'go on from the state saved in the folder, if there is one')
+    .addOption(
+      new Option('--checkpoint <time>', 'how often the state is saved')
+        .argParser(parseTime)
+        .default(CHECKPOINT_S, `${CHECKPOINT_S} s`),
+    )
+    .option('--shard <i/n>', 'run part i of n only; thickset merge puts the parts together', parseShard)
     .option('--threads <number>', 'worker threads; default: one for each core', parseThreads)
     .option('--seed <text>', 'seed to use instead of that of the setup', parseSeed)
     .option('--histories <number>', 'histories to run instead of those of the setup', parseHistories)
@@ -41,26 +58,27 @@ export function registerRunCommand(program: Command): void {
 /** Read and check, run, write, summarise. */
 async function runCommand(path: string, options: RunCommandOptions): Promise<void> {
   const file = readSetupFile(path);
-  checkResultFolder(options.out, options.overwrite ?? false);
-  printWarnings(file.warnings, options);
+  const setup = withOptions(file.setup, options);
+  const shard = options.shard ?? null;
+  const identity = runIdentity(setup, file.text, shard);
+  if (options.resume && (await endIfFinished(path, identity, options))) return;
 
-  const threads = options.threads ?? availableParallelism();
-  const interrupt = onInterrupt(() =>
-    say('\nFinishing the batches in hand; press Ctrl-C again to stop at once.'),
+  const { overwrite = false, resume = false } = options;
+  const folder = new RunFolder(options.out, { overwrite, resume }, identity, (message) =>
+    printWarnings([{ code: 'checkpoint', message, count: 1 }], options),
   );
-  const result = await run(withOptions(file.setup, options), threads, interrupt.signal, options);
-  printWarnings(result.warnings, options);
-  if (result.histories === 0) {
-    return endWithNothing(result);
-  }
-
-  const warnings = [...file.warnings, ...result.warnings];
-  const packed = packResult({ ...result, warnings }, { setupText: file.text, threads, finished: new Date() });
-  await writeAndPrint(packed, options);
-  interrupt.dispose();
-  if (result.stopped === 'interrupted') {
-    say(`Interrupted after ${formatCount(result.histories)} histories; their result is in ${options.out}.`);
-    process.exitCode = EXIT_CODES.interrupted;
+  try {
+    printWarnings(file.warnings, options);
+    const interrupt = onInterrupt(() =>
+      say('\nFinishing the batches in hand; press Ctrl-C again to stop at once.'),
+    );
+    const played = await play(setup, folder, interrupt.signal, options);
+    if (shard === null) await endRun(played, file, options);
+    else endShard(played, identity, options);
+    interrupt.dispose();
+    if (played.isComplete) folder.finish();
+  } finally {
+    folder.release();
   }
 }
 
@@ -72,19 +90,68 @@ function withOptions(setup: Setup, { seed, histories }: RunCommandOptions): Setu
   };
 }
 
-async function run(
+async function endIfFinished(
+  path: string,
+  identity: RunIdentity,
+  options: RunCommandOptions,
+): Promise<boolean> {
+  const { out, json } = options;
+  if (identity.shard !== null) {
+    const shard = finishedShard(out, identity);
+    if (shard !== null) printShard(identity.shard, shard.state.histories, options);
+    return shard !== null;
+  }
+  const result = finishedRun(out, path, identity);
+  if (result !== null) await printResult(result, out, { json, spectra: 'none' });
+  return result !== null;
+}
+
+async function play(
   setup: Setup,
-  threads: number,
+  folder: RunFolder,
   signal: AbortSignal,
-  { quiet }: RunCommandOptions,
-): Promise<RunResult> {
+  { quiet, threads, shard, checkpoint }: RunCommandOptions,
+): Promise<Run> {
+  const from = folder.load();
   const progress = await showProgress(setup, quiet ?? false);
   try {
-    return await simulate(setup, { threads, signal, onProgress: progress?.update });
+    return await playRun(setup, {
+      threads,
+      shard,
+      from,
+      signal,
+      checkpoint: folder.checkpointing(checkpoint),
+      onProgress: progress?.update,
+    });
   } catch (cause) {
     throw cause instanceof EngineError ? fromEngine(cause) : cause;
   } finally {
     progress?.clear();
+  }
+}
+
+/** Writes and shows the result of a whole run, or of as much of it as there is. */
+async function endRun(run: Run, file: SetupFile, options: RunCommandOptions): Promise<void> {
+  const result = resultOf(run);
+  printWarnings(result.warnings, options);
+  if (result.histories === 0) return endWithNothing(run);
+  const warnings = [...file.warnings, ...result.warnings];
+  const threads = options.threads ?? availableParallelism();
+  const packed = packResult({ ...result, warnings }, { setupText: file.text, threads, finished: new Date() });
+  await writeAndPrint(packed, options);
+  if (result.stopped !== 'interrupted') return;
+  say(
+    `Interrupted after ${formatCount(result.histories)} histories; their result is in ${options.out}. ` +
+      'Go on with --resume.',
+  );
+  process.exitCode = EXIT_CODES.interrupted;
+}
+
+function resultOf(run: Run) {
+  try {
+    return run.result();
+  } catch (cause) {
+    throw cause instanceof EngineError ? fromEngine(cause) : cause;
   }
 }
 
@@ -99,7 +166,7 @@ async function writeAndPrint(packed: PackedResult, { out, json }: RunCommandOpti
   await printResult(packed, out, { json, spectra: 'none' });
 }
 
-function endWithNothing({ stopped }: RunResult): void {
+function endWithNothing({ stopped }: Run): void {
   if (stopped !== 'interrupted') {
     throw errors.notSupported(
       'no batch of histories was finished; nothing is written',
@@ -108,6 +175,23 @@ function endWithNothing({ stopped }: RunResult): void {
   }
   say('Interrupted before any batch of histories was finished; nothing is written.');
   process.exitCode = EXIT_CODES.killed;
+}
+
+/** A shard has no figures of its own: it is written for `thickset merge`. */
+function endShard(run: Run, identity: RunIdentity, options: RunCommandOptions): void {
+  if (!run.isComplete) {
+    say(`Interrupted after ${formatCount(run.histories)} histories of this shard. Go on with --resume.`);
+    process.exitCode = EXIT_CODES.interrupted;
+    return;
+  }
+  writeShard(options.out, { identity, timings: run.timings(), state: run.state() });
+  printShard(identity.shard!, run.histories, options);
+}
+
+function printShard({ index, count }: Shard, histories: number, { out, json }: RunCommandOptions): void {
+  const facts = { out, shard: index, shards: count, histories };
+  const text = `Shard ${index} of ${count}: ${formatCount(histories)} histories in ${out}. Merge all with thickset merge.`;
+  process.stdout.write(json ? `${JSON.stringify(facts, null, 2)}\n` : `${text}\n`);
 }
 
 function printWarnings(warnings: readonly Warning[], { quiet }: RunCommandOptions): void {

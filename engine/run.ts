@@ -14,7 +14,7 @@ import type { BatchTask } from './batch-worker.js';
 import { compile } from './compile.js';
 import { EngineError } from './errors.js';
 import type { Problem } from './problem.js';
-import type { Progress, RunResult, StopReason } from './result.js';
+import type { Progress, RunResult, StopReason, Timings } from './result.js';
 import { makeResult } from './run-result.js';
 import { RunSums, type BatchResult, type RunState, type SumLengths } from './run-sums.js';
 import type { Setup } from './setup.js';
@@ -210,19 +210,24 @@ export class Run {
    */
   result(): RunResult {
     if (this.failure !== null) throw this.failure;
-    const played = this.sums.histories - this.earlierHistories;
     return makeResult({
       setup: this.setup,
       problem: this.problem,
       state: this.sums.state(),
       sums: this.sums.snapshot(),
       stopped: this.stopped ?? 'histories',
-      timings: {
-        wallS: this.elapsedS(),
-        workerS: this.workerMs / 1000,
-        historiesPerSecond: played > 0 ? (1000 * played) / (this.lastMs - this.firstMs) : 0,
-      },
+      timings: this.timings(),
     });
+  }
+
+  /** Times of this session. */
+  timings(): Timings {
+    const played = this.sums.histories - this.earlierHistories;
+    return {
+      wallS: this.elapsedS(),
+      workerS: this.workerMs / 1000,
+      historiesPerSecond: played > 0 ? (1000 * played) / (this.lastMs - this.firstMs) : 0,
+    };
   }
 }
 

@@ -5,6 +5,8 @@
  */
 import * as nodeFs from 'node:fs';
 import { basename, dirname, join, resolve } from 'node:path';
+import { flushFolder, PARTIAL_PREFIX } from '../checkpoint/durable-file.js';
+import { LOCK_NAME } from '../checkpoint/folder-lock.js';
 import { errors, ThicksetError } from '../errors.js';
 import { MANIFEST_NAME, parseManifest } from './manifest.js';
 
@@ -27,16 +29,29 @@ export type FileSystem = Pick<
   | 'writeFileSync'
 >;
 
-const PARTIAL = 'partial-';
-
 function nearestExisting(path: string, system: FileSystem): string {
   return system.existsSync(path) ? path : nearestExisting(dirname(path), system);
 }
 
+/** Names that say nothing about what a folder holds. */
+function isPassing(name: string): boolean {
+  return name.startsWith(PARTIAL_PREFIX) || name.startsWith(LOCK_NAME);
+}
+
+/** A folder that was made for a run which was killed before it had anything to keep. */
+function isLeftOver(folder: string, system: FileSystem): boolean {
+  const entries = system.readdirSync(folder);
+  return entries.length > 0 && entries.every(isPassing);
+}
+
+/** States of a run, and the data files it may have been killed while putting in place. */
+const UNFINISHED = /^(checkpoint(-previous)?\.bin|shard\.bin|(totals|spectra|depth)\.arrow)$/;
+
 function isOurs(folder: string, system: FileSystem): boolean {
-  const entries = system.readdirSync(folder).filter((name) => !name.startsWith(`.${PARTIAL}`));
+  const entries = system.readdirSync(folder).filter((name) => !isPassing(name));
   if (!entries.includes(MANIFEST_NAME)) {
-    return entries.length === 0;
+    const hasState = entries.some((name) => name.endsWith('.bin'));
+    return entries.length === 0 || (hasState && entries.every((name) => UNFINISHED.test(name)));
   }
   try {
     parseManifest(system.readFileSync(join(folder, MANIFEST_NAME), 'utf8'));
@@ -61,7 +76,7 @@ export function checkResultFolder(folder: string, overwrite: boolean, system: Fi
       if (!isOurs(path, system)) {
         throw errors.outputForeign(folder, 'holds something other than results');
       }
-      if (!overwrite) {
+      if (!overwrite && !isLeftOver(path, system)) {
         throw errors.outputExists(folder);
       }
     }
@@ -100,7 +115,7 @@ export function replaceResult(
 function createWhole(path: string, files: ReadonlyMap<string, Uint8Array>, system: FileSystem): void {
   const parent = dirname(path);
   const firstMade = system.mkdirSync(parent, { recursive: true });
-  const stage = join(parent, `.${basename(path)}.${PARTIAL}${process.pid}`);
+  const stage = join(parent, `.${basename(path)}${PARTIAL_PREFIX}${process.pid}`);
   try {
     writeStage(stage, files, system);
     system.renameSync(stage, path);
@@ -113,7 +128,7 @@ function createWhole(path: string, files: ReadonlyMap<string, Uint8Array>, syste
 }
 
 function replaceInside(path: string, files: ReadonlyMap<string, Uint8Array>, system: FileSystem): void {
-  const stage = join(path, `.${PARTIAL}${process.pid}`);
+  const stage = join(path, `${PARTIAL_PREFIX}${process.pid}`);
   const earlier = earlierFiles(path, system);
   try {
     writeStage(stage, files, system);
@@ -185,19 +200,6 @@ function writeStage(stage: string, files: ReadonlyMap<string, Uint8Array>, syste
   flushFolder(stage, system);
 }
 
-/** Makes renames last through a power cut. Windows cannot open folders; it keeps its own journal for them. */
-function flushFolder(path: string, system: FileSystem): void {
-  if (process.platform === 'win32') {
-    return;
-  }
-  const folder = system.openSync(path, 'r');
-  try {
-    system.fsyncSync(folder);
-  } finally {
-    system.closeSync(folder);
-  }
-}
-
 function removeMadeFolders(deepest: string, firstMade: string | undefined, system: FileSystem): void {
   if (firstMade === undefined) {
     return;
@@ -214,7 +216,8 @@ function removeMadeFolders(deepest: string, firstMade: string | undefined, syste
   }
 }
 
-function asFolderError(folder: string, cause: unknown): ThicksetError {
+/** What the system says about a folder, as an error of the program. */
+export function asFolderError(folder: string, cause: unknown): ThicksetError {
   if (cause instanceof ThicksetError) {
     return cause;
   }

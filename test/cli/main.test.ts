@@ -91,6 +91,11 @@ describe('help', () => {
       Options:
         --out <folder>        folder for the result
         --overwrite           replace the result that is in the folder
+        --resume              go on from the state saved in the folder, if there is
+                              one
+        --checkpoint <time>   how often the state is saved (default: 30 s)
+        --shard <i/n>         run part i of n only; thickset merge puts the parts
+                              together
         --threads <number>    worker threads; default: one for each core
         --seed <text>         seed to use instead of that of the setup
         --histories <number>  histories to run instead of those of the setup
@@ -302,12 +307,22 @@ test('a summary of nothing ends with 4', async () => {
   });
 });
 
-test.runIf(existsSync('/proc/version'))('figures that cannot be written are shown all the same', async () => {
+test.runIf(existsSync('/proc/version'))('a folder that cannot be made ends with 4 before the run', async () => {
   // Nobody can make folders in /proc, whatever its permissions say.
   const { code, stdout, stderr } = await thickset('run', 'setup.yaml', '--out', '/proc/thickset', '--json');
+  expect({ code, stdout }).toEqual({ code: 4, stdout: '' });
+  expect(stderr).toMatch(/^\/proc\/thickset: cannot be written \(.*\); choose another folder with --out\n$/);
+});
+
+test('figures that cannot be written are shown all the same', async () => {
+  await thickset('run', 'setup.yaml', '--out', 'blocked', '--histories', '1000');
+  rmSync(join(folder, 'blocked', 'totals.arrow'));
+  mkdirSync(join(folder, 'blocked', 'totals.arrow'));
+  const args = ['run', 'setup.yaml', '--out', 'blocked', '--overwrite', '--json'];
+  const { code, stdout, stderr } = await thickset(...args);
   expect(code).toBe(4);
   expect(JSON.parse(stdout)).toMatchObject({ out: null, histories: 30000 });
-  expect(stderr).toMatch(/^\/proc\/thickset: cannot be written \(.*\); choose another folder with --out\n$/);
+  expect(stderr).toMatch(/^blocked: cannot be written \(.*\); choose another folder with --out\n$/);
 });
 
 test('a reader that stops early is no error', async () => {
