@@ -1,4 +1,6 @@
 /** The warnings a run can give: one closed vocabulary, each given once with its count. */
+import { materialCoefficients } from '../materials/index.js';
+import { electronRangeWarning, fastestElectron } from './electron-range.js';
 import type { Warning } from './result.js';
 import type { Oddities } from './run-sums.js';
 import type { Setup } from './setup.js';
@@ -16,7 +18,23 @@ export function setupWarnings(setup: Setup, topKeV: number): Warning[] {
       count: 1,
     });
   }
-  return warnings;
+  return [...warnings, ...electronRangeWarnings(setup, topKeV)];
+}
+
+/** Detector layers that are thin against the range of the fastest electrons set free in them. */
+function electronRangeWarnings(setup: Setup, topKeV: number): Warning[] {
+  return setup.stack.flatMap(({ name, material, thicknessCm, detector }) => {
+    if (detector === null || material === null) return [];
+    const { photoelectric, total } = materialCoefficients(material, topKeV);
+    const { warning } = electronRangeWarning({
+      layer: name,
+      material,
+      thicknessCm,
+      photonKeV: topKeV,
+      electron: fastestElectron(topKeV, photoelectric / total),
+    });
+    return warning === null ? [] : [{ code: 'electron_range', message: warning, count: 1 }];
+  });
 }
 
 /** Warnings from what was counted during the run. */

@@ -26,7 +26,7 @@ const LABELS = {
   binMean: {
     name: 'mean',
     unit: '1',
-    description: `Content of the bin ${PER_PHOTON} (tally deposited: keV, by the energy left at one place); null: unknown`,
+    description: `Content of the bin ${PER_PHOTON} (tally deposited: keV, by what one history left in the layer); null: unknown`,
   },
   binError: {
     name: 'std_error',

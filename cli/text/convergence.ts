@@ -17,13 +17,12 @@ export type Flaw =
   /** The run ended before this figure reached the precision asked for. */
   | 'short_of_until';
 
-/** The row that `until` watches: the first that has the quantity, in the layer named if one is. */
+/** The row that `until` watches: of all lines together where there is one, in the layer named if one is. */
 export function watchedRow(totals: readonly QuantityRow[], until: ManifestUntil): QuantityRow | null {
-  return (
-    totals.find(
-      (row) => row.quantity === until.quantity && (until.layer === null || row.layer === until.layer),
-    ) ?? null
+  const rows = totals.filter(
+    (row) => row.quantity === until.quantity && (until.layer === null || row.layer === until.layer),
   );
+  return rows.find((row) => row.lineKeV === null) ?? rows[0] ?? null;
 }
 
 /** What is wrong with a figure; null where nothing is. */
