@@ -10,7 +10,7 @@ import { cpus, tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { parseSetup } from '../../dist/cli/setup-reader.js';
 import { Run, Simulator } from '../../dist/engine/index.js';
-import { CASES, setupText, yardstickArguments } from './cases.mjs';
+import { CASES, PROCESSES, setupText, yardstickArguments } from './cases.mjs';
 
 const quick = process.argv.includes('--quick');
 const ROUNDS = quick ? 3 : 9;
@@ -25,6 +25,7 @@ try {
   console.log(`${cpus()[0].model}, ${cpus().length} cores, Node ${process.version}`);
   await speed(yardstick, 'plain');
   await speed(yardstick, 'all');
+  await processes();
   await threads();
   await memory();
   waits();
@@ -108,6 +109,25 @@ function agree(benchCase, result, theirs) {
   console.log(
     `    figures agree: ${ok ? 'yes' : 'NO'} (largest difference ${worst.sigma.toFixed(1)} sigma, ${worst.quantity})`,
   );
+}
+
+/** What each process costs: time of a history with all physics over time without the process, in turn. */
+async function processes() {
+  console.log('\ntime with all physics over time without one process');
+  const simulator = new Simulator(1);
+  for (const benchCase of CASES) {
+    const rate = async (physics) =>
+      (await play(simulator, setupText(benchCase, physics, HISTORIES / 3))).timings.historiesPerSecond;
+    const costs = [];
+    for (const process of PROCESSES) {
+      await rate(process);
+      const ratios = [];
+      for (let round = 0; round < ROUNDS; round++) ratios.push((await rate(process)) / (await rate('all')));
+      costs.push(`${process} ${median(ratios).toFixed(2)}`);
+    }
+    console.log(`  ${benchCase.name.padEnd(44)} ${costs.join('  ')}`);
+  }
+  await simulator.close();
 }
 
 /** Two worker threads against one. */

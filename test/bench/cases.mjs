@@ -19,7 +19,18 @@ export const CASES = [
   },
 ];
 
-/** Setup text of a case; `physics` is `plain` (what the yardstick plays) or `all`. */
+const PHYSICS = { plain: PLAIN, all: '{}' };
+/** The switches of `physics`. */
+export const PROCESSES = [
+  'coherent',
+  'bound_incoherent',
+  'doppler',
+  'fluorescence',
+  'pair',
+  'bremsstrahlung',
+];
+
+/** Setup text of a case; `physics` is `plain` (what the yardstick plays), `all`, or the process to leave out. */
 export function setupText({ name, energyKeV, layers, detector }, physics, histories) {
   const stack = layers.map(
     ([material, thickness], i) =>
@@ -32,7 +43,7 @@ export function setupText({ name, energyKeV, layers, detector }, physics, histor
     'stack:',
     ...stack,
     'tally: {energy_bins: {width: 1 keV}}',
-    `physics: ${physics === 'plain' ? PLAIN : '{}'}`,
+    `physics: ${PHYSICS[physics] ?? `{${physics}: false}`}`,
     `run: {histories: ${histories}, transport: analog}`,
   ].join('\n');
 }
