@@ -1,6 +1,7 @@
 /** What runs in a worker thread: consecutive batches of a problem, each with its own random stream. */
 import { move, transferableSymbol, valueSymbol } from 'piscina';
 import { BatchTally } from './batch-tally.js';
+import { runDeepBatch } from './deep-kernel.js';
 import { Site } from './physics/interact.js';
 import type { Kernel, Problem } from './problem.js';
 import { seedStream } from './random.js';
@@ -19,6 +20,7 @@ const KERNELS: Record<Kernel, (problem: Problem, histories: number, site: Site, 
   {
     slab: runSlabBatch,
     solid: runSolidBatch,
+    deep: runDeepBatch,
   };
 
 /** Plays the batches of a task. */

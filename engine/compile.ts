@@ -2,6 +2,8 @@
 import { slotsOf } from './compile-slots.js';
 import { tablesOf } from './compile-tables.js';
 import { PAIR_THRESHOLD_KEV } from './constants.js';
+import { isDeep, makeDeepProblem } from './deep-choice.js';
+import { makeDoseLines } from './dose-lines.js';
 import { makeEmissionTable, topEnergyKeV } from './emission.js';
 import { sharedDoubles, type Problem } from './problem.js';
 import type { Physics, Setup } from './setup.js';
@@ -18,8 +20,9 @@ export function compile(setup: Setup): Problem {
   const beamCosine = source.shape.kind === 'beam' ? Math.cos((source.shape.angleDeg * Math.PI) / 180) : 1;
   const sourceLayer = source.shape.kind === 'embedded' ? layerNumber(setup, source.shape.layer) : 0;
   const solid = hasEdges(setup) ? makeSolidProblem(setup, beamCosine, sourceLayer) : null;
-  return {
-    kernel: solid ? 'solid' : 'slab',
+  const deep = isDeep(setup);
+  const problem: Problem = {
+    kernel: deep ? 'deep' : solid ? 'solid' : 'slab',
     seed: setup.seed,
     ...tables,
     cellCount: tables.grid.nodesKeV.length - 1,
@@ -35,8 +38,11 @@ export function compile(setup: Setup): Problem {
     cutoffKeV: physics.cutoffKeV,
     plain: isPlain(physics, topKeV),
     solid,
-    tally: makeTallyLayout(setup),
+    doseLines: makeDoseLines(tables.grid, setup.tally.dose),
+    deep: null,
+    tally: makeTallyLayout(setup, deep),
   };
+  return deep ? { ...problem, deep: makeDeepProblem(setup, problem) } : problem;
 }
 
 /** Whether nothing but absorption and incoherent scattering can happen, without secondaries or broadening. */

@@ -16,6 +16,16 @@ export interface QuantityRow {
   readonly mean: number | null;
   readonly stdError: number | null;
   readonly unit: string;
+  /** How far the error can be relied on, of weighted figures whose higher moments are kept. */
+  readonly reliability?: Reliability;
+}
+
+/** See reliability.ts. */
+export interface Reliability {
+  /** Histories that contributed. */
+  readonly contributing: number;
+  /** Relative variance of the variance; null where nothing varies. */
+  readonly vov: number | null;
 }
 
 export type SpectrumTally = 'transmitted' | 'reflected' | 'side_escape' | 'deposited' | 'pulse_height';
@@ -41,8 +51,10 @@ export interface Balance {
   readonly energyInKeV: number;
   readonly energyDepositedKeV: number;
   readonly energyOutKeV: number;
-  /** |in − deposited − out| / in; a run fails above 1e-9. */
+  /** |in − deposited − out| / in; a run fails above 1e-9, but for weighted transport, whose books close on the mean. */
   readonly relativeError: number;
+  /** Standard error of that in weighted transport. */
+  readonly relativeStdError?: number;
 }
 
 export interface Timings {

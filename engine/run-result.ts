@@ -5,9 +5,10 @@ import type { Problem } from './problem.js';
 import type { Balance, RunResult, StopReason, Timings } from './result.js';
 import type { RunState, Sums } from './run-sums.js';
 import type { Setup } from './setup.js';
+import { estimate } from './statistics.js';
 import { FIGURE, type TallyLayout } from './tally-layout.js';
-import { spectraOf, totalsOf } from './totals.js';
-import { oddityWarnings, setupWarnings } from './warnings.js';
+import { spectraOf, totalsOf, type RunFigures } from './totals.js';
+import { balanceWarnings, doseWarnings, oddityWarnings, setupWarnings } from './warnings.js';
 
 /** Energy book-keeping must close to this relative difference. */
 const BALANCE_TOLERANCE = 1e-9;
@@ -28,8 +29,8 @@ export interface RunParts {
 export function makeResult({ setup, problem, state, sums, stopped, timings }: RunParts): RunResult {
   const { histories, batches } = state;
   const layout = problem.tally;
-  const balance = balanceOf(sums, layout);
-  if (balance.relativeError > BALANCE_TOLERANCE) {
+  const balance = balanceOf(sums, layout, histories);
+  if (!layout.weighted && balance.relativeError > BALANCE_TOLERANCE) {
     throw new EngineError(
       'balance',
       `energy is not conserved: in − deposited − out is ${balance.relativeError} of in`,
@@ -41,7 +42,7 @@ export function makeResult({ setup, problem, state, sums, stopped, timings }: Ru
       `${state.oddities.strayed} photons were found outside the layer they were in, in ${histories} histories`,
     );
   }
-  const figures = { setup, layout, historyWeight: problem.historyWeight, histories, sums };
+  const figures: RunFigures = { setup, layout, historyWeight: problem.historyWeight, histories, sums };
   return {
     setup,
     histories,
@@ -49,13 +50,18 @@ export function makeResult({ setup, problem, state, sums, stopped, timings }: Ru
     totals: histories > 0 ? totalsOf(figures) : [],
     spectra: histories > 0 && sums.cellSum.length > 0 ? spectraOf(figures) : [],
     balance,
-    warnings: [...setupWarnings(setup, topEnergyKeV(problem.emission)), ...oddityWarnings(state.oddities)],
+    warnings: [
+      ...setupWarnings(setup, topEnergyKeV(problem.emission)),
+      ...doseWarnings(setup, layout.weighted),
+      ...oddityWarnings(state.oddities),
+      ...balanceWarnings(balance),
+    ],
     timings,
     stopped,
   };
 }
 
-function balanceOf(sums: Sums, layout: TallyLayout): Balance {
+function balanceOf(sums: Sums, layout: TallyLayout, histories: number): Balance {
   const figure = (index: number) => sums.figureSum[index];
   let energyDepositedKeV = 0;
   for (let l = 0; l < layout.layers; l++) energyDepositedKeV += figure(layout.depositedFigure + l);
@@ -63,10 +69,14 @@ function balanceOf(sums: Sums, layout: TallyLayout): Balance {
     figure(FIGURE.transmittedEnergy) + figure(FIGURE.reflectedEnergy) + figure(FIGURE.sideEscapeEnergy);
   const energyInKeV = figure(FIGURE.sourceEnergy);
   const difference = Math.abs(energyInKeV - energyDepositedKeV - energyOutKeV);
-  return {
+  const balance = {
     energyInKeV,
     energyDepositedKeV,
     energyOutKeV,
     relativeError: energyInKeV > 0 ? difference / energyInKeV : 0,
   };
+  if (!layout.weighted || energyInKeV === 0) return balance;
+  const { gapFigure } = layout.dose;
+  const gap = estimate(sums.figureSum[gapFigure], sums.figureSquare[gapFigure], histories);
+  return { ...balance, relativeStdError: ((gap.stdError ?? 0) * histories) / energyInKeV };
 }

@@ -5,6 +5,8 @@
  * standard errors are history-level ones even when a history scores twice in a cell. Figures are numbers of a history
  * whose sum and sum of squares are kept likewise.
  */
+import { makeCoincidenceLayout, type CoincidenceLayout } from './coincidence.js';
+import { makeDoseLayout, type DoseLayout } from './dose-layout.js';
 import type { Setup, SourceLine } from './setup.js';
 
 /** Figures of the whole stack; those of layers and lines follow. */
@@ -20,6 +22,9 @@ export const FIGURE = {
   sourceEnergy: 8,
 } as const;
 export const STACK_FIGURES = 9;
+
+/** A deposit this close to the line's energy is the whole of it: rounding of the sums of deposits. */
+export const FULL_ENERGY = 1 - 1e-9;
 
 export interface TallyLayout {
   readonly bins: number;
@@ -48,11 +53,22 @@ export interface TallyLayout {
   readonly depositedFigure: number;
   readonly interactingFigure: number;
   readonly fullEnergyFigure: number;
+  readonly dose: DoseLayout;
+  /** Null where coincidences are not asked for. */
+  readonly coincidence: CoincidenceLayout | null;
+  /**
+   * Products of incident with what a detector got, for the errors of intrinsic efficiencies: for each detector with
+   * interacting, then with full energy by line. Sums only, and only where incident differs from history to history.
+   */
+  readonly incidentProductFigure: number;
   readonly figures: number;
+
+  /** Histories carry weights: nothing that needs the whole of one is known. */
+  readonly weighted: boolean;
 }
 
 /** Lays out the tallies of a setup; without lines (continuum) full energy has one figure per detector. */
-export function makeTallyLayout(setup: Setup): TallyLayout {
+export function makeTallyLayout(setup: Setup, weighted = false): TallyLayout {
   const layers = setup.stack.length;
   const edgesKeV = setup.tally.energyEdgesKeV;
   const bins = edgesKeV.length - 1;
@@ -64,6 +80,10 @@ export function makeTallyLayout(setup: Setup): TallyLayout {
   const pulseHeightCell = depositedCell + layers * bins;
   const interactingFigure = STACK_FIGURES + layers;
   const fullEnergyFigure = interactingFigure + layers;
+  const dose = makeDoseLayout(setup, fullEnergyFigure + detectors * lines);
+  const cells = pulseHeightCell + detectors * bins;
+  const coincidence = makeCoincidenceLayout(setup, { bins, lines, cells, figures: dose.end });
+  const incidentProductFigure = coincidence?.end ?? dose.end;
   return {
     bins,
     edgesKeV,
@@ -79,11 +99,15 @@ export function makeTallyLayout(setup: Setup): TallyLayout {
     sideEscapeCell: 2 * bins,
     depositedCell,
     pulseHeightCell,
-    cells: pulseHeightCell + detectors * bins,
+    cells: coincidence?.endCell ?? cells,
     depositedFigure: STACK_FIGURES,
     interactingFigure,
     fullEnergyFigure,
-    figures: fullEnergyFigure + detectors * lines,
+    dose,
+    coincidence,
+    incidentProductFigure,
+    figures: incidentProductFigure + detectors * (1 + lines),
+    weighted,
   };
 }
 
@@ -121,4 +145,11 @@ function makeBinGuide(edgesKeV: Float64Array, scale: number): Int32Array {
 /** Source lines of a setup that full energy is told apart by. */
 export function fullEnergyLines(setup: Setup): readonly (SourceLine | null)[] {
   return setup.source.emission.lines.length > 0 ? setup.source.emission.lines : [null];
+}
+
+/** The bin of an energy below the last edge. */
+export function binOf({ binGuide, binScale, edgesKeV }: TallyLayout, energyKeV: number): number {
+  let bin = binGuide[(energyKeV * binScale) | 0];
+  while (energyKeV >= edgesKeV[bin + 1]) bin++;
+  return bin;
 }

@@ -3,6 +3,10 @@ import type { QuantityRow, Spectrum, SpectrumTally } from './result.js';
 import type { Sums } from './run-sums.js';
 import type { Setup } from './setup.js';
 import { estimate, partRatio } from './statistics.js';
+import { coincidenceRows, coincidenceSpectra } from './coincidence-rows.js';
+import { doseRows } from './dose-rows.js';
+import { intrinsicRows } from './intrinsic-rows.js';
+import { reliabilityOf } from './reliability.js';
 import { FIGURE, fullEnergyLines, type TallyLayout } from './tally-layout.js';
 
 /** What the figures are made of. */
@@ -25,9 +29,16 @@ const STACK_QUANTITIES = [
   ['side_escape_energy', FIGURE.sideEscapeEnergy, 'keV'],
 ] as const;
 
-/** The rows of totals.arrow: the stack, then each layer, then each detector. */
+/** The rows of totals.arrow: the stack, then each layer, then each detector, then dose. */
 export function totalsOf(run: RunFigures): QuantityRow[] {
-  return [...stackRows(run), ...layerRows(run), ...detectorRows(run)];
+  return [
+    ...stackRows(run),
+    ...layerRows(run),
+    ...detectorRows(run),
+    ...intrinsicRows(run),
+    ...coincidenceRows(run),
+    ...doseRows(run),
+  ];
 }
 
 function row(
@@ -40,7 +51,9 @@ function row(
 ): QuantityRow {
   const { sums, histories, historyWeight } = run;
   const value = estimate(sums.figureSum[figure], sums.figureSquare[figure], histories, historyWeight);
-  return { quantity, layer, lineKeV, mean: value.mean, stdError: value.stdError, unit };
+  const found = { quantity, layer, lineKeV, mean: value.mean, stdError: value.stdError, unit };
+  const reliability = reliabilityOf(sums, run.layout, figure, histories);
+  return reliability === null ? found : { ...found, reliability };
 }
 
 function stackRows(run: RunFigures): QuantityRow[] {
@@ -55,7 +68,10 @@ function layerRows(run: RunFigures): QuantityRow[] {
       ? []
       : [
           row(run, run.layout.depositedFigure + l, 'deposited_energy', 'keV', layer.name),
-          row(run, run.layout.interactingFigure + l, 'interacting', '1', layer.name),
+          // Weighted histories do not tell how many there are.
+          ...(run.layout.weighted
+            ? []
+            : [row(run, run.layout.interactingFigure + l, 'interacting', '1', layer.name)]),
         ],
   );
 }
@@ -104,6 +120,8 @@ export function spectraOf(run: RunFigures): Spectrum[] {
     spectrum(run, 'reflected', null, layout.reflectedCell),
   ];
   if (hasSides(setup)) spectra.push(spectrum(run, 'side_escape', null, layout.sideEscapeCell));
+  // Spectra of what a history leaves as a whole are not known of weighted ones.
+  if (layout.weighted) return spectra;
   setup.stack.forEach((layer, l) => {
     if (layer.material === null) return;
     spectra.push(spectrum(run, 'deposited', layer.name, layout.depositedCell + l * layout.bins));
@@ -113,6 +131,7 @@ export function spectraOf(run: RunFigures): Spectrum[] {
     if (detector < 0) return;
     spectra.push(spectrum(run, 'pulse_height', layer.name, layout.pulseHeightCell + detector * layout.bins));
   });
+  spectra.push(...coincidenceSpectra(run));
   return spectra;
 }
 

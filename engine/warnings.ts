@@ -1,7 +1,7 @@
 /** The warnings a run can give: one closed vocabulary, each given once with its count. */
 import { materialCoefficients } from '../materials/index.js';
 import { electronRangeWarning, fastestElectron } from './electron-range.js';
-import type { Warning } from './result.js';
+import type { Balance, Warning } from './result.js';
 import type { Oddities } from './run-sums.js';
 import type { Setup } from './setup.js';
 import { PAIR_THRESHOLD_KEV } from './constants.js';
@@ -51,4 +51,36 @@ export function oddityWarnings({ dopplerGivenUp, strayed }: Readonly<Oddities>):
       count: strayed,
     },
   ].filter(({ count }) => count > 0);
+}
+
+/** Doses that were asked for but cannot be scored in this transport. */
+export function doseWarnings(setup: Setup, weighted: boolean): Warning[] {
+  const { dose, depthProfile } = setup.tally;
+  if (weighted || (dose.length === 0 && depthProfile === null)) return [];
+  return [
+    {
+      code: 'dose_not_scored',
+      message:
+        'dose and depth profiles are scored by deep transport alone, which takes neither detector layers nor layers ' +
+        'with an edge: they are left unknown here; run the stack without detector, extent and radius to get them',
+      count: 1,
+    },
+  ];
+}
+
+/** Standard errors by which the mean energy of weighted histories may be off before it is told. */
+const BALANCE_SIGMAS = 5;
+
+/** Weighted histories conserve energy on the mean; too large a gap says that rare ones are missing. */
+export function balanceWarnings({ relativeError, relativeStdError }: Balance): Warning[] {
+  if (relativeStdError === undefined || relativeError <= BALANCE_SIGMAS * relativeStdError) return [];
+  return [
+    {
+      code: 'balance_open',
+      message:
+        `energy in and energy accounted for differ by ${(100 * relativeError).toPrecision(2)} %, more than ` +
+        `${BALANCE_SIGMAS} standard errors: rare histories are missing; run more histories`,
+      count: 1,
+    },
+  ];
 }
