@@ -157,10 +157,14 @@ function send(
 ): void {
   const { photon } = start;
   const openness = solid.biased ? aim[AIM_OPENNESS] : SPHERE;
-  const across = offsetCm > 0 ? aim[AIM_ACROSS] / offsetCm : 0;
-  photon[U] = across * photon[X];
-  photon[V] = across * photon[Y];
-  photon[W] = aim[AIM_ALONG];
+  if (solid.biased) {
+    const across = offsetCm > 0 ? aim[AIM_ACROSS] / offsetCm : 0;
+    photon[U] = across * photon[X];
+    photon[V] = across * photon[Y];
+    photon[W] = aim[AIM_ALONG];
+  } else {
+    pointAlongAxis(photon);
+  }
   turn(photon, 0.5 * openness * nextUniform(random), nextUniform(random));
   start.photon[WEIGHT] = 0.5 * openness;
   arrive(solid.stack, start);
