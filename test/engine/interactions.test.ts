@@ -9,6 +9,7 @@ import type { Physics } from '../../engine/setup.js';
 import {
   fluorescenceYield,
   materialCoefficients,
+  relaxation,
   resolveMaterial,
   subshellShares,
 } from '../../materials/index.js';
@@ -103,6 +104,56 @@ describe('an interaction', () => {
       each('lead', energyKeV, { ...ALL, coherent: false, pair: false }, 5000, (_, kind) => kinds.add(kind));
       expect([...kinds].sort()).toEqual([PHOTOELECTRIC, INCOHERENT]);
     }
+  });
+});
+
+describe('a process switched off', () => {
+  it('leaves scattered photons the energy of free electrons at rest (doppler)', () => {
+    let shifted = 0;
+    let scattered = 0;
+    each('lead', 300, { ...ALL, doppler: false, bremsstrahlung: false }, 5000, (site, kind) => {
+      if (kind !== INCOHERENT) return;
+      scattered++;
+      if (site.energyKeV !== 300 * comptonEnergyRatio(300, site.v)) shifted++;
+    });
+    expect(scattered).toBeGreaterThan(500);
+    expect(shifted).toBe(0);
+  });
+
+  it('leaves no photons but fluorescence and annihilation (bremsstrahlung)', () => {
+    const lines = new Set([
+      REST,
+      ...relaxation(82).shells.flatMap((s) => s.transitions.map((t) => t.photonKeV)),
+    ]);
+    let others = 0;
+    let all = 0;
+    each('lead', 3000, { ...ALL, bremsstrahlung: false }, 20_000, ({ secondaries }) => {
+      for (let i = 0; i < secondaries.count; i++) {
+        all++;
+        if (!lines.has(secondaries.energyKeV[i])) others++;
+      }
+    });
+    expect(all).toBeGreaterThan(5000);
+    expect(others).toBe(0);
+  });
+
+  it('leaves no fluorescence (fluorescence)', () => {
+    let set = 0;
+    each('lead', 100, { ...ALL, fluorescence: false, bremsstrahlung: false }, 5000, ({ secondaries }) => {
+      set += secondaries.count;
+    });
+    expect(set).toBe(0);
+  });
+
+  it('changes no bit where the process cannot happen (pair, below 1022 keV)', () => {
+    const play = (pair: boolean) =>
+      playSlab(
+        { stack: [['lead', 1]], energyKeV: 1021, physics: { ...ALL, pair }, seed: 'no pairs' },
+        10_000,
+      );
+    const [on, off] = [play(true), play(false)];
+    expect(Buffer.compare(Buffer.from(on.sums.cellSum.buffer), Buffer.from(off.sums.cellSum.buffer))).toBe(0);
+    expect(on.totals).toEqual(off.totals);
   });
 });
 
