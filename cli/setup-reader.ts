@@ -101,7 +101,7 @@ function check(
   const needs = emitted && {
     highestKeV: emitted.highestKeV,
     cutoffKeV: physics.cutoffKeV,
-    spectra: countSpectra(stack),
+    spectra: countSpectra(stack, tallyKeys),
   };
   const tally = makeTally(tallyKeys, needs, stack, problems);
   const run = makeRun(
@@ -109,9 +109,10 @@ function check(
     {
       stack,
       hasSides: 'extent' in keys || hasNarrowLayer(stack),
-      hasLines: emitted && emitted.emission.lines.length > 0,
       dose: tallyKeys.dose ?? [],
       dosePoints: dosePointNames(tallyKeys),
+      coincidence: tallyKeys.coincidence ?? false,
+      lines: emitted && emitted.emission.lines.length,
     },
     problems,
   );
@@ -140,8 +141,8 @@ function defaultTitle(fileName: string | undefined): string {
   return fileName === undefined ? 'Untitled' : basename(fileName, extname(fileName));
 }
 
-/** The text of a file that may not be what it says it is. */
-function readSetupText(path: string): string {
+/** The text of a file that may not be what it says it is. @throws SetupError */
+export function readSetupText(path: string): string {
   const text = readFileOrComplaint(path);
   if (typeof text === 'string') return text;
   const problems = new ProblemList(path);

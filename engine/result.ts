@@ -28,7 +28,15 @@ export interface Reliability {
   readonly vov: number | null;
 }
 
-export type SpectrumTally = 'transmitted' | 'reflected' | 'side_escape' | 'deposited' | 'pulse_height';
+export type SpectrumTally =
+  | 'transmitted'
+  | 'reflected'
+  | 'side_escape'
+  | 'deposited'
+  | 'pulse_height'
+  | 'anticoincidence'
+  | 'coincidence'
+  | 'pulse_height_sum';
 
 export interface Spectrum {
   readonly tally: SpectrumTally;
@@ -37,6 +45,18 @@ export interface Spectrum {
   readonly energyHighKeV: Float64Array;
   readonly mean: Float64Array;
   readonly stdError: Float64Array;
+}
+
+/** One slice of a depth profile; the columns of depth.arrow. */
+export interface DepthRow {
+  readonly layer: string;
+  /** From the layer's face on the source side. */
+  readonly depthLowCm: number;
+  readonly depthHighCm: number;
+  readonly quantity: string;
+  readonly mean: number | null;
+  readonly stdError: number | null;
+  readonly unit: string;
 }
 
 /** One warning of the closed vocabulary in warnings.ts, with how often it occurred. */
@@ -74,6 +94,8 @@ export interface RunResult {
   readonly batches: number;
   readonly totals: readonly QuantityRow[];
   readonly spectra: readonly Spectrum[];
+  /** Depth profile; absent or empty where none is scored. */
+  readonly depth?: readonly DepthRow[];
   readonly balance: Balance;
   readonly warnings: readonly Warning[];
   readonly timings: Timings;

@@ -96,6 +96,8 @@ export interface Tally {
   readonly dose: readonly DoseQuantity[];
   readonly dosePoints: readonly DosePoint[];
   readonly depthProfile: DepthProfile | null;
+  /** Detectors are held against one another: lone pulses, coincidences, sums. */
+  readonly coincidence?: boolean;
 }
 
 export interface Physics {

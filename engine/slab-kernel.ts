@@ -8,6 +8,7 @@
  */
 import { BUCKET_OFFSET, BUCKET_SHIFT } from './energy-grid.js';
 import { MAX_TOUCHED, type BatchTally } from './batch-tally.js';
+import { scoreCoincidences } from './coincidence.js';
 import { ELECTRON_REST_KEV, PAIR_THRESHOLD_KEV } from './constants.js';
 import { lineEnergyKeV, pickLine } from './emission.js';
 import { AZIMUTH_COSINE, AZIMUTH_STEPS, LOG_INVERSE, LOG_NEGATIVE, POWER_OF_TWO } from './lookup-tables.js';
@@ -65,7 +66,7 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
   const { nodesKeV, firstCell } = problem.grid;
   const { binGuide, binScale, unevenBins, edgesKeV, detectorOfLayer, bins, lines } = tally.layout;
   const { transmittedCell, reflectedCell, depositedCell, pulseHeightCell } = tally.layout;
-  const { depositedFigure, interactingFigure, fullEnergyFigure } = tally.layout;
+  const { depositedFigure, interactingFigure, fullEnergyFigure, coincidence } = tally.layout;
   const { cellSum, cellSquare, figureSum, figureSquare, pending, touched } = tally;
   const { random, secondaries } = site;
   const deposited = new Float64Array(layers);
@@ -425,6 +426,7 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
       figureSum[FIGURE.reflectedEnergy] += reflectedKeV;
       figureSquare[FIGURE.reflectedEnergy] += reflectedKeV * reflectedKeV;
     }
+    if (coincidence !== null) scoreCoincidences(tally, deposited, sourceKeV, line, 1);
     for (let l = 0; l < layers; l++) {
       let pulseKeV = deposited[l];
       if (pulseKeV === 0) continue;

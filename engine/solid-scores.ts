@@ -2,10 +2,8 @@
 import { LEFT_FAR } from '../geometry/index.js';
 import { addFigure, closeHistory, MAX_TOUCHED, type BatchTally } from './batch-tally.js';
 import { ENERGY, WEIGHT } from './photon.js';
-import { FIGURE, type TallyLayout } from './tally-layout.js';
-
-/** A deposit this close to the line's energy is the whole of it: rounding of the sums of deposits. */
-const FULL_ENERGY = 1 - 1e-9;
+import { scoreCoincidences } from './coincidence.js';
+import { binOf, FIGURE, FULL_ENERGY, type TallyLayout } from './tally-layout.js';
 
 /** Surfaces by number: far face, front face, side (LEFT_FAR − how it left). */
 const SURFACES = 3;
@@ -23,8 +21,8 @@ export class SolidScores {
   private readonly pending: Float64Array;
   private readonly touchedCells: Int32Array;
   private readonly layout: TallyLayout;
-  /** Source energy; weight that left through the far face without a collision. */
-  private readonly source = new Float64Array(2);
+  /** Source energy; weight that left through the far face without a collision; weight that is incident. */
+  private readonly source = new Float64Array(3);
 
   constructor(
     private readonly tally: BatchTally,
@@ -45,6 +43,7 @@ export class SolidScores {
     this.line = line;
     source[0] = photon[ENERGY];
     source[1] = 0;
+    source[2] = incident ? photon[WEIGHT] : 0;
     if (incident) addFigure(tally, FIGURE.incident, photon[WEIGHT]);
     addFigure(tally, FIGURE.sourceEnergy, photon[WEIGHT] * photon[ENERGY]);
   }
@@ -82,8 +81,11 @@ export class SolidScores {
   private closePulses(weight: number): void {
     const { tally, layout, depositedKeV, cutoffKeV } = this;
     const { layers, lines, bins, depositedCell, detectorOfLayer, pulseHeightCell } = layout;
-    const { depositedFigure, interactingFigure, fullEnergyFigure } = layout;
+    const { depositedFigure, interactingFigure, fullEnergyFigure, incidentProductFigure } = layout;
+    const { figureSum } = tally;
     const sourceKeV = this.source[0];
+    const product = weight * this.source[2];
+    if (layout.coincidence !== null) scoreCoincidences(tally, depositedKeV, sourceKeV, this.line, weight);
     for (let layer = 0; layer < layers; layer++) {
       let pulseKeV = depositedKeV[layer];
       if (pulseKeV === 0) continue;
@@ -97,7 +99,13 @@ export class SolidScores {
       addFigure(tally, interactingFigure + layer, weight);
       const detector = detectorOfLayer[layer];
       if (detector < 0) continue;
-      if (whole) addFigure(tally, fullEnergyFigure + detector * lines + (lines > 1 ? this.line : 0), weight);
+      const products = incidentProductFigure + detector * (1 + lines);
+      const line = lines > 1 ? this.line : 0;
+      figureSum[products] += product;
+      if (whole) {
+        addFigure(tally, fullEnergyFigure + detector * lines + line, weight);
+        figureSum[products + 1 + line] += product;
+      }
       this.add(pulseHeightCell + detector * bins + bin, weight);
     }
   }
@@ -110,10 +118,4 @@ export class SolidScores {
     this.touchedCells[count] = cell;
     this.touched = count + 1;
   }
-}
-
-function binOf({ binGuide, binScale, edgesKeV }: TallyLayout, energyKeV: number): number {
-  let bin = binGuide[(energyKeV * binScale) | 0];
-  while (energyKeV >= edgesKeV[bin + 1]) bin++;
-  return bin;
 }

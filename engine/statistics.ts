@@ -36,3 +36,21 @@ export function partRatio(
   const variance = Math.max(0, partSquare - 2 * ratio * partSquare + ratio * ratio * wholeSquare);
   return { mean: ratio, stdError: Math.sqrt(variance) / whole };
 }
+
+/** Sum and sum of squares of a figure over histories. */
+export interface FigureSums {
+  readonly sum: number;
+  readonly square: number;
+}
+
+/**
+ * Ratio of two figures of the same histories, `whole` not 0, with its standard error by first-order propagation.
+ *
+ * @param product sum over histories of the product of the two
+ */
+export function jointRatio(part: FigureSums, whole: FigureSums, product: number): Estimate {
+  const ratio = part.sum / whole.sum;
+  if (part.square === 0) return { mean: ratio, stdError: null };
+  const variance = Math.max(0, part.square - 2 * ratio * product + ratio * ratio * whole.square);
+  return { mean: ratio, stdError: Math.sqrt(variance) / whole.sum };
+}

@@ -33,11 +33,12 @@ export function makePhysics(keys: PhysicsKeys, warnings: SetupWarning[]): Physic
 export interface RunNeeds {
   readonly stack: StackDraft;
   readonly hasSides: boolean;
-  /** null: not known. */
-  readonly hasLines: boolean | null;
+  /** Number of source lines; 0: a spectrum; null: not known. */
+  readonly lines: number | null;
   readonly dose: readonly (DoseQuantity | undefined)[];
   /** Names of the dose points. */
   readonly dosePoints: readonly string[];
+  readonly coincidence: boolean;
 }
 
 /** True if some layer has an edge of its own, or may have. */
@@ -63,7 +64,7 @@ function reportPulseHeights(keys: RunKeys, { stack }: RunNeeds, problems: Proble
   if (stack.detectors.length > 0) {
     const rule = `deep transport gives no pulse heights, but ${stack.detectors[0].name ?? 'a layer'} is a detector`;
     problems.add(['run', 'transport'], complaints.contradiction(rule, `remove detector, or ${way}`));
-  } else if (quantity === 'interacting' || kind === 'detector') {
+  } else if (quantity === 'interacting' || kind === 'detector' || kind === 'detector_total') {
     const rule = `deep transport cannot give ${quantity}`;
     problems.add(['run', 'transport'], complaints.contradiction(rule, way));
   }
@@ -79,17 +80,21 @@ function makeUntil(keys: UntilKeys, needs: RunNeeds, problems: ProblemList): Unt
 }
 
 /** Why this setup cannot give the quantity, or null. */
-function missingFor(quantity: QuantityName, { stack, hasSides, hasLines, dose }: RunNeeds): Complaint | null {
+function missingFor(quantity: QuantityName, needs: RunNeeds): Complaint | null {
+  const { stack, hasSides, dose } = needs;
   const lacks = (what: string, wayOut: string) =>
     complaints.notAvailable(`${quantity} needs ${what}`, wayOut);
   switch (QUANTITIES[quantity]) {
     case 'side':
       return hasSides ? null : lacks('layers with an edge', 'add extent, or give a layer a radius');
     case 'detector':
+    case 'lines':
+    case 'detector_total':
+    case 'coincidence':
       if (stack.layers.length > 0 && stack.detectors.length === 0) {
         return lacks('a detector layer', 'add detector: {} to a layer');
       }
-      return hasLines === false ? lacks('source lines, not a spectrum', 'watch interacting instead') : null;
+      return lackOfDetectors(quantity, needs, lacks);
     case 'dose':
       return dose.includes(quantity as DoseQuantity)
         ? null
@@ -99,6 +104,24 @@ function missingFor(quantity: QuantityName, { stack, hasSides, hasLines, dose }:
     default:
       return null;
   }
+}
+
+/** What a figure of detectors lacks beyond a detector. */
+function lackOfDetectors(
+  quantity: QuantityName,
+  { lines, coincidence }: RunNeeds,
+  lacks: (what: string, wayOut: string) => Complaint,
+): Complaint | null {
+  const kind = QUANTITIES[quantity];
+  if (kind === 'coincidence' && !coincidence) {
+    return lacks('detectors in coincidence', 'add coincidence: true to the tally');
+  }
+  if (kind === 'detector' && lines === 0) {
+    return lacks('source lines, not a spectrum', 'watch interacting instead');
+  }
+  return kind === 'lines' && lines !== null && lines < 2
+    ? lacks('several source lines', 'watch full_energy instead')
+    : null;
 }
 
 function checkLayer(quantity: QuantityName, layer: string, needs: RunNeeds, problems: ProblemList): void {
@@ -116,7 +139,7 @@ function checkLayer(quantity: QuantityName, layer: string, needs: RunNeeds, prob
     problems.add(path, complaints.unknownName('dose point', layer, nearestWord(layer, names), wayOut));
   } else {
     const found = needs.stack.find(layer, path, problems);
-    if (kind !== 'detector' || found === null || found.isDetector) return;
+    if (kind === 'layer' || found === null || found.isDetector) return;
     const names = needs.stack.detectors.flatMap(({ name }) => name ?? []);
     problems.add(
       path,

@@ -80,6 +80,11 @@ export const tallySchema = z
       })
       .meta({ description: 'Dose and energy against depth in one layer.' })
       .optional(),
+    coincidence: trueOrFalse({
+      description:
+        'Tells pulses of a detector that come alone from those that come with one of another detector, and adds all up; needs two detectors.',
+      default: false,
+    }).optional(),
   })
   .meta({ description: 'What is scored.' });
 
@@ -115,6 +120,12 @@ export const QUANTITIES = {
   interacting: 'layer',
   full_energy: 'detector',
   peak_to_total: 'detector',
+  absolute_full_energy: 'lines',
+  intrinsic_full_energy: 'detector',
+  intrinsic_interacting: 'detector_total',
+  anticoincidence: 'coincidence',
+  coincidence: 'coincidence',
+  anticoincidence_full_energy: 'coincidence',
   air_kerma: 'dose',
   ambient_dose: 'dose',
   effective_dose_ap: 'dose',
@@ -124,7 +135,7 @@ export const QUANTITIES = {
 
 export type QuantityName = keyof typeof QUANTITIES;
 
-const untilSchema = z
+export const untilSchema = z
   .strictObject({
     quantity: choice('quantity', Object.keys(QUANTITIES) as QuantityName[], {
       description: 'Figure to watch.',

@@ -15,8 +15,9 @@ type PointKeys = Partially<NonNullable<NonNullable<SetupKeys['tally']>['dose_poi
 const SPECTRA_OF_STACK = 3;
 
 /** Number of spectra that share the energy bins. */
-export function countSpectra(stack: StackDraft): number {
-  return SPECTRA_OF_STACK + stack.layers.length + stack.detectors.length;
+export function countSpectra(stack: StackDraft, { coincidence = false }: TallyKeys = {}): number {
+  const detectors = stack.detectors.length;
+  return SPECTRA_OF_STACK + stack.layers.length + detectors + (coincidence ? detectors + 1 : 0);
 }
 
 /**
@@ -40,9 +41,17 @@ export function makeTally(
     );
   }
   const depthProfile = makeDepthProfile(keys.depth_profile, stack, problems);
+  if (keys.coincidence && stack.layers.length > 0 && stack.detectors.length < 2) {
+    const rule = `needs two detectors or more, there ${stack.detectors.length === 1 ? 'is one' : 'is none'}`;
+    problems.add(
+      ['tally', 'coincidence'],
+      complaints.contradiction(rule, 'add detector: {} to another layer'),
+    );
+  }
   const binsAreWrong = 'energy_bins' in keys && keys.energy_bins === undefined;
   const edges = binsAreWrong ? null : makeEnergyEdges(keys.energy_bins, needs, problems);
-  return edges === null ? null : { energyEdgesKeV: edges, dose, dosePoints, depthProfile };
+  const coincidence = keys.coincidence ?? false;
+  return edges === null ? null : { energyEdgesKeV: edges, dose, dosePoints, depthProfile, coincidence };
 }
 
 function makeDose(quantities: readonly (DoseQuantity | undefined)[], problems: ProblemList): DoseQuantity[] {

@@ -33,6 +33,9 @@ const SPECTRUM_TITLES: Readonly<Record<SpectrumTally, string>> = {
   side_escape: 'Photons through the sides',
   deposited: 'Energy deposited',
   pulse_height: 'Pulse heights',
+  anticoincidence: 'Pulse heights without a pulse elsewhere',
+  coincidence: 'Pulse heights with a pulse elsewhere',
+  pulse_height_sum: 'Pulse heights of all detectors added up',
 };
 
 function head({ title, histories, seed, stopped, timings }: Manifest, style: Style): string[] {

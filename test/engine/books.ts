@@ -71,6 +71,11 @@ function checkSpectrum(
     near(`pulses of ${layer}`, total, figure('interacting', layer));
     atMost(`lower end of the pulses of ${layer}`, lowKeV, figure('deposited_energy', layer));
     atMost(`full-energy pulses of ${layer}`, figure('full_energy', layer), total);
+  } else if (tally === 'anticoincidence' || tally === 'coincidence') {
+    near(`pulses of ${tally} of ${layer}`, total, figure(tally, layer));
+    atMost(`lower end of ${tally} of ${layer}`, lowKeV, figure('deposited_energy', layer));
+  } else if (tally === 'pulse_height_sum') {
+    near('sums of pulses', total, figure('sum_interacting'));
   } else {
     near(`photons of ${tally}`, total, figure(tally));
     atMost(`lower end of ${tally}`, lowKeV, figure(`${tally}_energy`));
