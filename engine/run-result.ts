@@ -1,5 +1,6 @@
 /** The result of a run from its sums. */
 import { topEnergyKeV } from './emission.js';
+import { depthRows } from './depth-rows.js';
 import { EngineError } from './errors.js';
 import type { Problem } from './problem.js';
 import type { Balance, RunResult, StopReason, Timings } from './result.js';
@@ -49,6 +50,7 @@ export function makeResult({ setup, problem, state, sums, stopped, timings }: Ru
     batches,
     totals: histories > 0 ? totalsOf(figures) : [],
     spectra: histories > 0 && sums.cellSum.length > 0 ? spectraOf(figures) : [],
+    depth: histories > 0 ? depthRows(figures) : [],
     balance,
     warnings: [
       ...setupWarnings(setup, topEnergyKeV(problem.emission)),

@@ -4,6 +4,7 @@ import type { Sums } from './run-sums.js';
 import type { Setup } from './setup.js';
 import { estimate, partRatio } from './statistics.js';
 import { coincidenceRows, coincidenceSpectra } from './coincidence-rows.js';
+import { valueLayerRows } from './depth-rows.js';
 import { doseRows } from './dose-rows.js';
 import { intrinsicRows } from './intrinsic-rows.js';
 import { reliabilityOf } from './reliability.js';
@@ -38,6 +39,7 @@ export function totalsOf(run: RunFigures): QuantityRow[] {
     ...intrinsicRows(run),
     ...coincidenceRows(run),
     ...doseRows(run),
+    ...valueLayerRows(run),
   ];
 }
 

@@ -183,7 +183,8 @@ function addDepths(
     const lost = isSource ? NaN : Math.abs(flow(bin).current - flow(bin + 1).current);
     const inside = isSource ? insideSource(bin, depthBins, step) : step > 0 ? lost / step : flow(bin).fluence;
     addDoses(dose.insideFigure + bin * doses, inside);
-    const behind = isSource || backwards ? NaN : flow(bin + 1).fluence;
+    // A stack that ends in a slice, on the mean over it.
+    const behind = isSource || backwards ? NaN : inside;
     addDoses(dose.behindFigure + bin * doses, behind);
     addDoses(dose.behindUncollidedFigure + bin * doses, behind);
   }
