@@ -86,7 +86,12 @@ export function valueLayerRows(run: RunFigures): QuantityRow[] {
   });
 }
 
-function rowsOf(curve: readonly CurvePoint[], layer: string, beginning: string, ending: string): QuantityRow[] {
+function rowsOf(
+  curve: readonly CurvePoint[],
+  layer: string,
+  beginning: string,
+  ending: string,
+): QuantityRow[] {
   const free = curve[0]?.thicknessCm === 0 ? curve[0].dose : null;
   const row = (name: string, thickness: Thickness | null): QuantityRow => ({
     quantity: `${beginning}${name}${ending}`,
