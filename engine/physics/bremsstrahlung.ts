@@ -62,7 +62,7 @@ export function emitBremsstrahlung(
   out: Float64Array,
   frames: Float64Array | null,
 ): number {
-  const { cutoffKeV, step, photons, turning } = tables;
+  const { cutoffKeV, step, photons, silent, turning } = tables;
   const room = out.length >> 1;
   let count = 0;
   let u = firstUniform;
@@ -93,7 +93,9 @@ export function emitBremsstrahlung(
     }
     count++;
     kineticKeV = emittingKeV - photonKeV;
+    if (kineticKeV <= cutoffKeV) break;
     u = next();
+    if (u < silent[bucketOf(kineticKeV)]) break;
   }
   return count;
 }
