@@ -20,8 +20,9 @@ export async function simulate(setup: Setup, options: SimulateOptions = {}): Pro
  */
 export async function playRun(setup: Setup, options: SimulateOptions = {}): Promise<Run> {
   const run = new Run(setup, options);
-  if (run.isOver) return run;
   const { threads, signal } = options;
+  if (signal?.aborted) run.stop('interrupted');
+  if (run.isOver) return run;
   const simulator = new Simulator(threads === undefined ? undefined : Math.min(threads, run.batchesLeft));
   let next: Run | null = run;
   try {
