@@ -59,6 +59,21 @@ export interface DepthRow {
   readonly unit: string;
 }
 
+/** The lines of one series of one element, strongest first; their shares add up to 1. */
+export interface XRayGroup {
+  readonly element: string;
+  readonly series: 'Ka' | 'Kb';
+  /** Photons below it set none of these free. */
+  readonly edgeKeV: number;
+  readonly lines: readonly { readonly energyKeV: number; readonly share: number }[];
+}
+
+/** The K X rays of a detector layer. */
+export interface DetectorXRays {
+  readonly layer: string;
+  readonly groups: readonly XRayGroup[];
+}
+
 /** One warning of the closed vocabulary in warnings.ts, with how often it occurred. */
 export interface Warning {
   readonly code: string;
@@ -94,6 +109,8 @@ export interface RunResult {
   readonly batches: number;
   readonly totals: readonly QuantityRow[];
   readonly spectra: readonly Spectrum[];
+  /** K X rays of the detectors that have any. */
+  readonly xRays?: readonly DetectorXRays[];
   /** Depth profile; absent or empty where none is scored. */
   readonly depth?: readonly DepthRow[];
   readonly balance: Balance;

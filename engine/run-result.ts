@@ -1,4 +1,5 @@
 /** The result of a run from its sums. */
+import { detectorXRays } from './detector-x-rays.js';
 import { topEnergyKeV } from './emission.js';
 import { depthRows } from './depth-rows.js';
 import { EngineError } from './errors.js';
@@ -51,6 +52,7 @@ export function makeResult({ setup, problem, state, sums, stopped, timings }: Ru
     totals: histories > 0 ? totalsOf(figures) : [],
     spectra: histories > 0 && sums.cellSum.length > 0 ? spectraOf(figures) : [],
     depth: histories > 0 ? depthRows(figures) : [],
+    xRays: detectorXRays(setup),
     balance,
     warnings: [
       ...setupWarnings(setup, topEnergyKeV(problem.emission)),

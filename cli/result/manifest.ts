@@ -5,8 +5,8 @@
  * folder is either whole or known not to be.
  */
 import { createHash } from 'node:crypto';
-import type { RunResult, StopReason, Warning } from '../../engine/result.js';
-import type { Physics, Setup, SourceShape } from '../../engine/setup.js';
+import type { DetectorXRays, RunResult, StopReason, Warning } from '../../engine/result.js';
+import type { Detector, Physics, Resolution, Setup, SourceShape } from '../../engine/setup.js';
 import { packageVersion } from '../version.js';
 
 export const MANIFEST_NAME = 'manifest.json';
@@ -25,6 +25,31 @@ export interface ManifestSource {
   readonly live_time_s: number | null;
 }
 
+/** The width of peaks; see `detector.fwhm` of setup files. */
+export type ManifestWidth =
+  | { readonly kind: 'at_energy'; readonly fwhm_keV: number; readonly at_keV: number }
+  | { readonly kind: 'formula'; readonly a: number; readonly b: number; readonly c: number }
+  | { readonly kind: 'table'; readonly energy_keV: readonly number[]; readonly fwhm_keV: readonly number[] };
+
+/** What is made of the pulse heights of a detector without a new run. */
+export interface ManifestResponse {
+  readonly fwhm: ManifestWidth | null;
+  readonly threshold_keV: number | null;
+  readonly windows: readonly {
+    readonly name: string;
+    readonly energy_low_keV: number;
+    readonly energy_high_keV: number;
+  }[];
+}
+
+/** K X rays whose escape a detector's spectrum may show. */
+export interface ManifestXRays {
+  readonly element: string;
+  readonly series: 'Ka' | 'Kb';
+  readonly edge_keV: number;
+  readonly lines: readonly { readonly energy_keV: number; readonly share: number }[];
+}
+
 export interface ManifestLayer {
   readonly name: string;
   /** null: vacuum */
@@ -33,12 +58,23 @@ export interface ManifestLayer {
   readonly thickness_cm: number;
   readonly radius_cm: number | null;
   readonly detector: boolean;
+  /** Of detectors only. */
+  readonly response?: ManifestResponse;
+  readonly x_rays?: readonly ManifestXRays[];
 }
 
 export interface ManifestUntil {
   readonly quantity: string;
   readonly layer: string | null;
   readonly relative_error: number;
+}
+
+/** Histories that contributed to a figure, and the relative variance of its variance. */
+export interface ManifestReliability {
+  readonly quantity: string;
+  readonly layer: string | null;
+  readonly contributing: number;
+  readonly vov: number | null;
 }
 
 export interface Manifest {
@@ -64,7 +100,11 @@ export interface Manifest {
     readonly energy_deposited_keV: number;
     readonly energy_out_keV: number;
     readonly relative_error: number;
+    /** Standard error of that, in transport with weights. */
+    readonly relative_std_error?: number;
   };
+  /** How far the errors of weighted figures can be relied on; empty for others. */
+  readonly reliability?: readonly ManifestReliability[];
   readonly warnings: readonly Warning[];
   readonly timings: {
     readonly wall_s: number;
@@ -118,7 +158,51 @@ function describeSource({ shape, emission, activityBq, liveTimeS }: Setup['sourc
   };
 }
 
-function describeStack(stack: Setup['stack']): ManifestLayer[] {
+/** The width of peaks as the manifest has it. */
+export function describeWidth(resolution: Resolution): ManifestWidth {
+  switch (resolution.kind) {
+    case 'at_energy':
+      return { kind: 'at_energy', fwhm_keV: resolution.fwhmKeV, at_keV: resolution.atKeV };
+    case 'formula':
+      return resolution;
+    case 'table':
+      return { kind: 'table', energy_keV: resolution.energyKeV, fwhm_keV: resolution.fwhmKeV };
+  }
+}
+
+/** The other way round. */
+export function widthFromManifest(width: ManifestWidth): Resolution {
+  switch (width.kind) {
+    case 'at_energy':
+      return { kind: 'at_energy', fwhmKeV: width.fwhm_keV, atKeV: width.at_keV };
+    case 'formula':
+      return width;
+    case 'table':
+      return { kind: 'table', energyKeV: width.energy_keV, fwhmKeV: width.fwhm_keV };
+  }
+}
+
+function describeDetector(detector: Detector, xRays: DetectorXRays | undefined): Partial<ManifestLayer> {
+  return {
+    response: {
+      fwhm: detector.resolution && describeWidth(detector.resolution),
+      threshold_keV: detector.thresholdKeV,
+      windows: detector.windows.map(({ name, energyLowKeV, energyHighKeV }) => ({
+        name,
+        energy_low_keV: energyLowKeV,
+        energy_high_keV: energyHighKeV,
+      })),
+    },
+    x_rays: (xRays?.groups ?? []).map(({ element, series, edgeKeV, lines }) => ({
+      element,
+      series,
+      edge_keV: edgeKeV,
+      lines: lines.map(({ energyKeV, share }) => ({ energy_keV: energyKeV, share })),
+    })),
+  };
+}
+
+function describeStack({ setup: { stack }, xRays = [] }: RunResult): ManifestLayer[] {
   return stack.map((layer) => ({
     name: layer.name,
     material: layer.material?.name ?? null,
@@ -126,6 +210,11 @@ function describeStack(stack: Setup['stack']): ManifestLayer[] {
     thickness_cm: layer.thicknessCm,
     radius_cm: layer.radiusCm,
     detector: layer.detector !== null,
+    ...(layer.detector &&
+      describeDetector(
+        layer.detector,
+        xRays.find((found) => found.layer === layer.name),
+      )),
   }));
 }
 
@@ -155,7 +244,7 @@ export function makeManifest(
     stopped: result.stopped,
     run: describeRun(setup.run),
     source: describeSource(setup.source),
-    stack: describeStack(setup.stack),
+    stack: describeStack(result),
     extent: setup.extent && withSnakeCase<number | string>({ ...setup.extent }),
     physics: withSnakeCase<boolean | number>({ ...(setup.physics satisfies Physics) }),
     balance: {
@@ -163,7 +252,11 @@ export function makeManifest(
       energy_deposited_keV: balance.energyDepositedKeV,
       energy_out_keV: balance.energyOutKeV,
       relative_error: balance.relativeError,
+      ...(balance.relativeStdError === undefined ? {} : { relative_std_error: balance.relativeStdError }),
     },
+    reliability: result.totals.flatMap(({ quantity, layer, reliability }) =>
+      reliability ? [{ quantity, layer, ...reliability }] : [],
+    ),
     warnings: result.warnings,
     timings: {
       wall_s: timings.wallS,
