@@ -57,13 +57,10 @@ export function hasEdges({ extent, stack }: Pick<Setup, 'extent' | 'stack'>): bo
 /**
  * Compiles the part of a problem that only stacks with edges have.
  *
- * @throws EngineError for a source that is spread over a layer without an edge, and for deep transport
+ * @throws EngineError for a source that is spread over a layer without an edge
  */
 export function makeSolidProblem(setup: Setup, beamCosine: number, sourceLayer: number): SolidProblem {
   const source = setup.source.shape;
-  if (setup.run.transport === 'deep') {
-    throw new EngineError('unsupported', 'deep transport is for layers without edges');
-  }
   const layers = setup.stack.map((layer) => ({ thicknessCm: layer.thicknessCm, edge: edgeOf(setup, layer) }));
   const spread = source.kind === 'embedded' ? sourceLayer : source.kind === 'diffuse' ? 0 : -1;
   if (spread >= 0 && layers[spread].edge.kind === 'none') {
@@ -101,17 +98,15 @@ export function startInSolid(solid: SolidProblem, random: StreamState, start: So
   const { source, stack } = solid;
   const { photon } = start;
   switch (source.kind) {
-    case 'beam':
-      placeInBeam(
-        photon,
-        0.5 * source.diameterCm,
-        solid.beamCosine,
-        nextUniform(random),
-        nextUniform(random),
-      );
+    case 'beam': {
+      const wide = source.diameterCm > 0;
+      const u1 = wide ? nextUniform(random) : 0;
+      const u2 = wide ? nextUniform(random) : 0;
+      placeInBeam(photon, 0.5 * source.diameterCm, solid.beamCosine, u1, u2);
       start.photon[WEIGHT] = 1;
       arrive(stack, start);
       return;
+    }
     case 'point':
       photon[X] = source.offsetCm;
       photon[Y] = 0;

@@ -25,6 +25,8 @@ export interface SolidStack {
   /** Layer l lies between planes l and l + 1. */
   readonly planesCm: Float64Array;
   readonly radiusSquaredCm2: Float64Array;
+  /** 1/(2 R), 0 without a circle. */
+  readonly inverseDiameterPerCm: Float64Array;
   readonly halfWidthCm: Float64Array;
   readonly halfHeightCm: Float64Array;
 }
@@ -59,6 +61,7 @@ export function makeSolidStack(layers: readonly SolidLayer[]): SolidStack {
     layers: layers.length,
     planesCm: shared(planes),
     radiusSquaredCm2: fill((edge) => (edge.kind === 'radius' ? edge.radiusCm ** 2 : Infinity)),
+    inverseDiameterPerCm: fill((edge) => (edge.kind === 'radius' ? 0.5 / edge.radiusCm : 0)),
     halfWidthCm: fill((edge) => (edge.kind === 'rectangle' ? edge.widthCm / 2 : Infinity)),
     halfHeightCm: fill((edge) => (edge.kind === 'rectangle' ? edge.heightCm / 2 : Infinity)),
   };
@@ -113,11 +116,11 @@ export function clearance(stack: SolidStack, layer: number, ray: Float64Array): 
   const y = ray[Y];
   const z = ray[Z];
   const planesCm = Math.min(z - stack.planesCm[layer], stack.planesCm[layer + 1] - z);
-  const radiusSquared = stack.radiusSquaredCm2[layer];
+  const inverseDiameter = stack.inverseDiameterPerCm[layer];
   // R − r = (R² − r²)/(R + r), and r is R at most.
   const edgeCm =
-    radiusSquared < Infinity
-      ? (0.5 * (radiusSquared - x * x - y * y)) / Math.sqrt(radiusSquared)
+    inverseDiameter > 0
+      ? (stack.radiusSquaredCm2[layer] - x * x - y * y) * inverseDiameter
       : Math.min(stack.halfWidthCm[layer] - Math.abs(x), stack.halfHeightCm[layer] - Math.abs(y));
   return Math.max(0, Math.min(planesCm, edgeCm));
 }

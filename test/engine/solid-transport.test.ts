@@ -74,6 +74,13 @@ describe('Photons that strike the front face', () => {
     expectNear('incident', figureOf(played, 'incident'), mean);
   });
 
+  it('are half of those of a point that lies on it, and none of one beside it', () => {
+    expect(figureOf(playSolid(bare(point(0, 3), 'auto'), 2000), 'incident').mean).toBe(0.5);
+    const beside = playSolid(bare(point(0, 5), 'auto'), 20_000);
+    expect(figureOf(beside, 'incident').mean).toBe(0);
+    expect(cameIn(beside)).toBeGreaterThan(0.1);
+  });
+
   it('are fewer than those that come in, where the side is lit too', () => {
     const played = playSolid(bare(point(1, 8), 'auto'), 20_000);
     expect(cameIn(played)).toBeGreaterThan(1.5 * figureOf(played, 'incident').mean);
