@@ -7,6 +7,7 @@ import { W, Z } from '../geometry/index.js';
 import { COSINE_BINS, COSINES, cosineBin, type DeepGrid } from './deep-grid.js';
 import { depthToFar, depthToFront } from './deep-paths.js';
 import { bucketOf } from './energy-grid.js';
+import { GUIDE_STEPS } from './deep-slices.js';
 import { ENERGY } from './photon.js';
 import { CELL_LENGTH, sharedDoubles, type Problem } from './problem.js';
 import { nextOpenUniform, nextUniform, type StreamState } from './random.js';
@@ -71,11 +72,13 @@ export class Flight {
 
   /** Slice that holds depth z of a layer. */
   sliceAt(z: number, layer: number): number {
-    const { firstSlice, slicesPerCm } = this.grid;
-    const inside = ((z - this.problem.boundariesCm[layer]) * slicesPerCm[layer]) | 0;
-    const first = firstSlice[layer];
-    const count = firstSlice[layer + 1] - first;
-    return first + (inside < 0 ? 0 : inside >= count ? count - 1 : inside);
+    const { firstSlice, edgesCm, sliceGuide, guidePerCm } = this.grid;
+    const step = ((z - this.problem.boundariesCm[layer]) * guidePerCm[layer]) | 0;
+    const last = firstSlice[layer + 1] - 1;
+    let slice =
+      sliceGuide[layer * GUIDE_STEPS + (step < 0 ? 0 : step >= GUIDE_STEPS ? GUIDE_STEPS - 1 : step)];
+    while (slice < last && z >= edgesCm[slice + 1]) slice++;
+    return slice;
   }
 
   /** Draws the next collision of a photon in `layer`. Returns the factor on its weight, 0 when nothing lies ahead. */
@@ -90,20 +93,18 @@ export class Flight {
     if (!(reach > 0)) return 0;
     const start = this.sliceAt(z, layer);
     const base = this.tableOf(energyKeV, w);
-    const here = this.levelAt(base, start, z, layer, w > 0);
+    const here = this.levelAt(base, start, z, w > 0);
     const byChance = nextUniform(random) < ANALOG_PART;
     if (byChance) this.drawByChance(photon, layer, cell, reach);
     else this.drawSlice(base, start, here, w > 0);
 
     // Chance of a collision in the slice, and the place inside it.
-    const { firstSlice, slicesPerCm } = this.grid;
+    const { edgesCm, layerOfSlice } = this.grid;
     const slice = this.slice;
-    const own = this.grid.layerOfSlice[slice];
-    const sliceCm = 1 / slicesPerCm[own];
-    const lowCm = problem.boundariesCm[own] + (slice - firstSlice[own]) * sliceCm;
+    const own = layerOfSlice[slice];
     const isOwn = slice === start;
-    const nearCm = isOwn ? z : w > 0 ? lowCm : lowCm + sliceCm;
-    const endCm = w > 0 ? Math.max(nearCm, lowCm + sliceCm) : Math.min(nearCm, lowCm);
+    const nearCm = isOwn ? z : edgesCm[w > 0 ? slice : slice + 1];
+    const endCm = w > 0 ? Math.max(nearCm, edgesCm[slice + 1]) : Math.min(nearCm, edgesCm[slice]);
     const perCm = this.attenuation(own, cell, energyKeV);
     const before = isOwn ? 0 : this.pathTo(photon, layer, cell, own, nearCm);
     const within = ((endCm - nearCm) * perCm) / w;
@@ -125,9 +126,9 @@ export class Flight {
   }
 
   /** Table at the place of the photon, between the edges of its slice. */
-  private levelAt(base: number, slice: number, z: number, layer: number, forwards: boolean): number {
-    const { firstSlice, slicesPerCm } = this.grid;
-    const inside = (z - this.problem.boundariesCm[layer]) * slicesPerCm[layer] - (slice - firstSlice[layer]);
+  private levelAt(base: number, slice: number, z: number, forwards: boolean): number {
+    const { edgesCm } = this.grid;
+    const inside = (z - edgesCm[slice]) / (edgesCm[slice + 1] - edgesCm[slice]);
     const part = Math.max(0, Math.min(1, forwards ? inside : 1 - inside));
     const from = this.tables[base + slice + (forwards ? 0 : 1)];
     const to = this.tables[base + slice + (forwards ? 1 : 0)];

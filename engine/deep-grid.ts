@@ -4,6 +4,7 @@
  * collide; no result depends on it but by its statistical error.
  */
 import { bucketStartKeV, cellOf } from './energy-grid.js';
+import { sliceStack } from './deep-slices.js';
 import { CELL_LENGTH, sharedDoubles, sharedInts, type Problem } from './problem.js';
 
 /**
@@ -46,14 +47,10 @@ export function cosineBin(w: number): number {
   return COSINE_BIN[((w + 1) * FINENESS) | 0];
 }
 
-/** Groups to a factor e in energy: 10 % wide, so that attenuation changes little within a group. */
+/** Groups to a factor e in energy: 11 % wide, so that attenuation changes little within a group. */
 const GROUPS_PER_E_FOLD = 9;
 /** Photons below it count as being at it: they reach nothing that is far. */
 const LOWEST_KEV = 15;
-/** Optical thickness of a slice for the most penetrating energy. */
-const SLICE_DEPTH = 0.35;
-const MIN_SLICES = 4;
-const MAX_SLICES = 480;
 
 export interface DeepGrid {
   readonly groups: number;
@@ -62,10 +59,14 @@ export interface DeepGrid {
   /** Group by the bucket of the energy grid. */
   readonly groupOfBucket: Int32Array;
   readonly slices: number;
+  /** Bounds of the slices, cm from the front face. */
+  readonly edgesCm: Float64Array;
   /** First slice of each layer, and the number of all. */
   readonly firstSlice: Int32Array;
-  readonly slicesPerCm: Float64Array;
   readonly layerOfSlice: Int32Array;
+  /** Slice to try first, by layer and even step of depth in it; steps per cm of each layer. */
+  readonly sliceGuide: Int32Array;
+  readonly guidePerCm: Float64Array;
   /** Optical thickness of each slice, group by group. */
   readonly opticalDepth: Float64Array;
 }
@@ -80,34 +81,32 @@ export function attenuationPerCm(problem: Problem, slot: number, energyKeV: numb
 export function makeDeepGrid(problem: Problem, topKeV: number): DeepGrid {
   const energiesKeV = groupEnergies(problem, topKeV);
   const groups = energiesKeV.length;
-  const perLayer = slicesOfLayers(problem, energiesKeV);
-  const slices = perLayer.reduce((sum, count) => sum + count, 0);
-  const firstSlice = sharedInts(problem.layers + 1);
-  const slicesPerCm = sharedDoubles(problem.layers);
-  const layerOfSlice = sharedInts(slices);
-  const opticalDepth = sharedDoubles(slices * groups);
-  perLayer.forEach((count, layer) => {
-    const first = firstSlice[layer];
-    const thicknessCm = problem.boundariesCm[layer + 1] - problem.boundariesCm[layer];
-    firstSlice[layer + 1] = first + count;
-    slicesPerCm[layer] = count / thicknessCm;
-    layerOfSlice.fill(layer, first, first + count);
+  const perCm = (layer: number, group: number) =>
+    attenuationPerCm(problem, problem.slotOfLayer[layer], energiesKeV[group]);
+  const slices = sliceStack(
+    Array.from({ length: problem.layers }, (_, layer) => {
+      const all = Array.from({ length: groups }, (_, group) => perCm(layer, group));
+      return {
+        lowCm: problem.boundariesCm[layer],
+        highCm: problem.boundariesCm[layer + 1],
+        leastPerCm: Math.min(...all),
+        mostPerCm: Math.max(...all),
+      };
+    }),
+  );
+  const { edgesCm, layerOfSlice } = slices;
+  const opticalDepth = sharedDoubles(layerOfSlice.length * groups);
+  layerOfSlice.forEach((layer, i) => {
     for (let g = 0; g < groups; g++) {
-      const perCm = attenuationPerCm(problem, problem.slotOfLayer[layer], energiesKeV[g]);
-      for (let i = first; i < first + count; i++) {
-        opticalDepth[i * groups + g] = (perCm * thicknessCm) / count;
-      }
+      opticalDepth[i * groups + g] = (edgesCm[i + 1] - edgesCm[i]) * perCm(layer, g);
     }
   });
-  const groupOfBucket = groupsOfBuckets(problem, energiesKeV);
   return {
     groups,
     energiesKeV,
-    groupOfBucket,
-    slices,
-    firstSlice,
-    slicesPerCm,
-    layerOfSlice,
+    groupOfBucket: groupsOfBuckets(problem, energiesKeV),
+    slices: layerOfSlice.length,
+    ...slices,
     opticalDepth,
   };
 }
@@ -120,17 +119,6 @@ function groupEnergies(problem: Problem, topKeV: number): Float64Array {
   for (let g = 0; g < groups; g++) energies[g] = topKeV * Math.exp((g / (groups - 1) - 1) * span);
   energies[groups - 1] = topKeV;
   return energies;
-}
-
-function slicesOfLayers(problem: Problem, energiesKeV: Float64Array): number[] {
-  const depths = Array.from({ length: problem.layers }, (_, layer) => {
-    const thicknessCm = problem.boundariesCm[layer + 1] - problem.boundariesCm[layer];
-    const slot = problem.slotOfLayer[layer];
-    return thicknessCm * Math.min(...energiesKeV.map((energy) => attenuationPerCm(problem, slot, energy)));
-  });
-  const total = depths.reduce((sum, depth) => sum + depth, 0);
-  const step = Math.max(SLICE_DEPTH, total / MAX_SLICES);
-  return depths.map((depth) => (depth === 0 ? 1 : Math.max(MIN_SLICES, Math.ceil(depth / step))));
 }
 
 function groupsOfBuckets(problem: Problem, energiesKeV: Float64Array): Int32Array {

@@ -63,7 +63,7 @@ export function makeDeepPlan(problem: Problem, tally: Tally): DeepPlan {
   const first = Float64Array.from(source.collisions);
   const born = Float64Array.from(source.photons);
   const forward = sweepForward(grid, matrices, source);
-  const response = weighResponse(problem, grid, matrices, pieces, forward, sharesFor(tally, grid));
+  const response = weighResponse(problem, grid, matrices, pieces, forward, sharesFor(tally));
   const worth = sweepBackward(grid, matrices, response);
   const mean = dot(first, worth.collision) + dot(born, worth.flight);
   const scale = mean > 0 ? 1 / mean : 0;
@@ -110,13 +110,9 @@ function scorePieces(grid: DeepGrid, scored: Scored): ScorePieces {
   return { leaving, path };
 }
 
-function sharesFor({ dose, dosePoints, depthProfile }: Tally, grid: DeepGrid): Shares {
-  const stackCm = Array.from(grid.slicesPerCm).reduce(
-    (sum, perCm, layer) => sum + (grid.firstSlice[layer + 1] - grid.firstSlice[layer]) / perCm,
-    0,
-  );
-  const behind = dosePoints.length === 0 || dosePoints.some(({ zCm }) => zCm > stackCm / 2);
-  const inFront = dosePoints.some(({ zCm }) => zCm < stackCm / 2);
+function sharesFor({ dose, dosePoints, depthProfile }: Tally): Shares {
+  const behind = dosePoints.length === 0 || dosePoints.some(({ zCm }) => zCm > 0);
+  const inFront = dosePoints.some(({ zCm }) => zCm <= 0);
   return {
     far: behind ? 1 : 0.3,
     front: inFront ? 1 : dose.length > 0 ? 0.15 : 0.1,
@@ -174,8 +170,10 @@ function addDepths(
     let size = 0;
     for (let g = 0; g < grid.groups; g++) size += forward.collisions[i * grid.groups + g] * scoreOf(g);
     if (size === 0) continue;
+    const part =
+      (share * (grid.edgesCm[i + 1] - grid.edgesCm[i])) / (grid.edgesCm[end] - grid.edgesCm[first]);
     for (let g = 0; g < grid.groups; g++) {
-      collision[i * grid.groups + g] += (share * scoreOf(g)) / (size * (end - first));
+      collision[i * grid.groups + g] += (part * scoreOf(g)) / size;
     }
   }
 }

@@ -80,7 +80,7 @@ function collideFirst(
   for (let i = 0; i < grid.slices; i++) {
     const layer = grid.layerOfSlice[i];
     const perCm = attenuationPerCm(problem, problem.slotOfLayer[layer], energyKeV);
-    const collided = -flow * Math.expm1(-perCm / (grid.slicesPerCm[layer] * w));
+    const collided = -flow * Math.expm1(-((grid.edgesCm[i + 1] - grid.edgesCm[i]) * perCm) / w);
     flow -= collided;
     if (collided > 0) {
       spread(grid, energyKeV, collided, (group, part) => {
@@ -101,7 +101,8 @@ function emitInLayer(
   for (let i = first; i < end; i++) {
     for (let bin = 0; bin < COSINE_BINS; bin++) {
       const part = (COSINE_BOUNDS[bin + 1] - COSINE_BOUNDS[bin]) / 2;
-      spread(grid, energyKeV, (share * part) / (end - first), (group, amount) => {
+      const thickness = (grid.edgesCm[i + 1] - grid.edgesCm[i]) / (grid.edgesCm[end] - grid.edgesCm[first]);
+      spread(grid, energyKeV, share * part * thickness, (group, amount) => {
         photons[(i * grid.groups + group) * COSINE_BINS + bin] += amount;
       });
     }

@@ -7,9 +7,9 @@ import {
   type CurvePoint,
   type Thickness,
 } from './attenuation-curve.js';
+import { figureEstimate } from './figure-estimate.js';
 import { doseUnit } from './dose-rows.js';
 import type { DepthRow, QuantityRow } from './result.js';
-import { estimate } from './statistics.js';
 import type { RunFigures } from './totals.js';
 
 /** Rows of depth.arrow; none without a profile or where the transport scores none. */
@@ -22,7 +22,7 @@ export function depthRows(run: RunFigures): DepthRow[] {
   const sliceCm = setup.stack[dose.depthLayer].thicknessCm / dose.depthBins;
   const rows = (quantity: string, unit: string, figureOf: (bin: number) => number) =>
     slices.map((bin) => {
-      const { mean, stdError } = estimateAt(run, figureOf(bin));
+      const { mean, stdError } = figureEstimate(run, figureOf(bin));
       return {
         layer: depthProfile.layer,
         depthLowCm: bin * sliceCm,
@@ -50,20 +50,16 @@ export function depthRows(run: RunFigures): DepthRow[] {
   ];
 }
 
-function estimateAt({ sums, histories, historyWeight }: RunFigures, figure: number) {
-  return estimate(sums.figureSum[figure], sums.figureSquare[figure], histories, historyWeight);
-}
-
 /** The curves of one dose quantity against the thickness of the layer profiled, if the stack ended with it. */
 export function attenuationCurves(run: RunFigures, d: number): { broad: CurvePoint[]; narrow: CurvePoint[] } {
   const { dose } = run.layout;
   const sliceCm = run.setup.stack[dose.depthLayer].thicknessCm / dose.depthBins;
   const isBare = run.setup.stack.slice(0, dose.depthLayer).every(({ material }) => material === null);
-  const free = estimateAt(run, dose.farFreeFigure + d).mean;
+  const free = figureEstimate(run, dose.farFreeFigure + d).mean;
   const start = isBare && Number.isFinite(free) ? free : null;
   const at = (figure: number) =>
     Array.from({ length: dose.depthBins }, (_, bin) => {
-      const { mean, stdError } = estimateAt(run, figure + bin * dose.doses + d);
+      const { mean, stdError } = figureEstimate(run, figure + bin * dose.doses + d);
       return { mean, stdError: stdError ?? 0 };
     });
   return {

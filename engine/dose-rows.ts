@@ -1,8 +1,9 @@
 /** Rows of dose: at the dose points and at the two faces, with what is uncollided and what the stack takes away. */
+import { figureEstimate } from './figure-estimate.js';
 import type { QuantityRow, Reliability } from './result.js';
 import { reliabilityOf } from './reliability.js';
 import type { DosePoint, DoseQuantity, Setup } from './setup.js';
-import { estimate, type Estimate } from './statistics.js';
+import type { Estimate } from './statistics.js';
 import type { RunFigures } from './totals.js';
 
 const UNITS: Readonly<Record<DoseQuantity, string>> = {
@@ -68,7 +69,7 @@ function hasEnd({ source }: Setup): boolean {
 
 function faceRows(run: RunFigures, quantity: DoseQuantity, d: number): QuantityRow[] {
   const unit = doseUnit(quantity, true);
-  const front = estimateOf(run, run.layout.dose.frontFigure + d);
+  const front = figureEstimate(run, run.layout.dose.frontFigure + d);
   return [
     ...placeRows(quantity, d, null, unit, farDose(run, d)),
     makeRow(`${quantity}_reflected`, null, unit, front, reliability(run, run.layout.dose.frontFigure + d)),
@@ -83,7 +84,7 @@ function farDose(run: RunFigures, d: number): PlaceDose {
 /** On the source side: what comes back, and what arrives (nothing from a source inside). */
 function frontDose(run: RunFigures, d: number): PlaceDose {
   const { dose } = run.layout;
-  const back = estimateOf(run, dose.frontFigure + d);
+  const back = figureEstimate(run, dose.frontFigure + d);
   const inside = run.setup.source.shape.kind === 'embedded';
   const free = inside ? NaN : meanOf(run, dose.farFreeFigure + d);
   const arriving = inside ? 0 : free;
@@ -97,7 +98,7 @@ function frontDose(run: RunFigures, d: number): PlaceDose {
 
 function placeDose(run: RunFigures, whole: number, uncollided: number, free: number): PlaceDose {
   return {
-    whole: estimateOf(run, whole),
+    whole: figureEstimate(run, whole),
     uncollided: meanOf(run, uncollided),
     free: meanOf(run, free),
     reliability: reliability(run, whole),
@@ -112,7 +113,7 @@ function placeRows(
   { whole, uncollided, free, reliability }: PlaceDose,
 ): QuantityRow[] {
   const over = (divisor: number): Estimate => ({
-    mean: whole.mean / divisor,
+    mean: Number.isFinite(divisor) ? whole.mean / divisor : NaN,
     stdError: whole.stdError === null ? null : whole.stdError / divisor,
   });
   const exact: Estimate = { mean: uncollided, stdError: 0 };
@@ -125,10 +126,6 @@ function placeRows(
     makeRow(ratioName('dose_transmission', quantity, d), place, '1', over(free), rest),
     makeRow(ratioName('buildup', quantity, d), place, '1', over(uncollided), rest),
   ];
-}
-
-function estimateOf({ sums, histories, historyWeight }: RunFigures, figure: number): Estimate {
-  return estimate(sums.figureSum[figure], sums.figureSquare[figure], histories, historyWeight);
 }
 
 function meanOf({ sums, histories, historyWeight }: RunFigures, figure: number): number {

@@ -8,16 +8,6 @@ import type { Reliability } from './result.js';
 import type { Sums } from './run-sums.js';
 import type { TallyLayout } from './tally-layout.js';
 
-/** VOV above which an error counts as unreliable: common practice in photon transport with weights. */
-export const VOV_LIMIT = 0.1;
-/** Histories that must contribute at least (common practice). */
-export const LEAST_CONTRIBUTING = 50;
-
-/** Whether a figure's error must not be relied on. */
-export function isUnreliable({ contributing, vov }: Reliability): boolean {
-  return contributing < LEAST_CONTRIBUTING || vov === null || vov > VOV_LIMIT;
-}
-
 /** Null for a figure whose moments are not kept. */
 export function reliabilityOf(
   sums: Sums,

@@ -5,6 +5,7 @@ import type { Setup } from './setup.js';
 import { estimate, partRatio } from './statistics.js';
 import { coincidenceRows, coincidenceSpectra } from './coincidence-rows.js';
 import { valueLayerRows } from './depth-rows.js';
+import { figureEstimate } from './figure-estimate.js';
 import { doseRows } from './dose-rows.js';
 import { intrinsicRows } from './intrinsic-rows.js';
 import { reliabilityOf } from './reliability.js';
@@ -51,8 +52,8 @@ function row(
   layer: string | null = null,
   lineKeV: number | null = null,
 ): QuantityRow {
-  const { sums, histories, historyWeight } = run;
-  const value = estimate(sums.figureSum[figure], sums.figureSquare[figure], histories, historyWeight);
+  const { sums, histories } = run;
+  const value = figureEstimate(run, figure);
   const found = { quantity, layer, lineKeV, mean: value.mean, stdError: value.stdError, unit };
   const reliability = reliabilityOf(sums, run.layout, figure, histories);
   return reliability === null ? found : { ...found, reliability };

@@ -1,5 +1,6 @@
 /** A result as the one object that `--json` prints; the rows of `totals` have the columns of totals.arrow. */
 import type { QuantityRow } from '../../engine/result.js';
+import { doseRates } from '../dose-rates.js';
 import { flawOf, watchedRow } from '../text/convergence.js';
 import { relativeError } from '../text/figure-format.js';
 import type { Manifest } from './manifest.js';
@@ -10,6 +11,17 @@ const LEFT_OUT: ReadonlySet<string> = new Set(['format', 'setup', 'files'] satis
 
 function totalsRow({ quantity, layer, lineKeV, mean, stdError, unit }: QuantityRow): Record<string, unknown> {
   return { quantity, layer, line_keV: lineKeV, mean, std_error: stdError, unit };
+}
+
+/** Relative error and figure of merit of a figure: 1/(error² · time inside workers), which more histories leave alone. */
+function precisionOf(
+  { quantity, layer, lineKeV, mean, stdError }: QuantityRow,
+  { timings }: Manifest,
+): object[] {
+  const error = relativeError(mean, stdError);
+  if (error === null || error === 0) return [];
+  const merit = timings.worker_s > 0 ? 1 / (error * error * timings.worker_s) : null;
+  return [{ quantity, layer, line_keV: lineKeV, relative_error: error, figure_of_merit_per_s: merit }];
 }
 
 /** The object for a result; `out` is its folder, null when nothing could be written. */
@@ -30,6 +42,14 @@ export function resultObject(
     ...facts,
     setup_sha256: manifest.setup?.sha256 ?? null,
     totals: totals.map(totalsRow),
+    dose_rates: doseRates(totals, manifest.source).map(({ row, mean, stdError, unit }) => ({
+      quantity: row.quantity,
+      layer: row.layer,
+      mean,
+      std_error: stdError,
+      unit,
+    })),
+    precision: totals.flatMap((row) => precisionOf(row, manifest)),
     not_converged: flawed,
   };
 }

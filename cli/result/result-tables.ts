@@ -1,5 +1,5 @@
 /** The tables of a result: which columns they have, what those mean, and how rows turn into columns and back. */
-import type { QuantityRow, Spectrum, SpectrumTally } from '../../engine/result.js';
+import type { DepthRow, QuantityRow, Spectrum, SpectrumTally } from '../../engine/result.js';
 import { decodeTable, encodeTable, type ColumnLabel, type TextColumn } from './arrow-file.js';
 
 const PER_PHOTON = 'per source photon';
@@ -23,6 +23,18 @@ const LABELS = {
   layer: { name: 'layer', unit: '', description: 'Layer; null: the whole stack' },
   low: { name: 'energy_low_keV', unit: 'keV', description: 'Lower edge of the energy bin' },
   high: { name: 'energy_high_keV', unit: 'keV', description: 'Upper edge of the energy bin' },
+  depthLow: {
+    name: 'depth_low_cm',
+    unit: 'cm',
+    description: 'Near side of the slice, from the face of the layer towards the source',
+  },
+  depthHigh: { name: 'depth_high_cm', unit: 'cm', description: 'Far side of the slice' },
+  depthLayer: { name: 'layer', unit: '', description: 'Layer' },
+  depthQuantity: {
+    name: 'quantity',
+    unit: '',
+    description: 'Dose in the slice; …_behind: dose behind a stack that ends in the slice; deposited_energy',
+  },
   binMean: {
     name: 'mean',
     unit: '1',
@@ -105,6 +117,19 @@ export function encodeSpectra(spectra: readonly Spectrum[]): Uint8Array {
   ]);
 }
 
+/** depth.arrow: slice after slice, quantity after quantity. */
+export function encodeDepth(rows: readonly DepthRow[]): Uint8Array {
+  return encodeTable('Depth profile of a layer with its standard errors', [
+    { ...LABELS.depthLayer, values: toTextColumn(rows.map((row) => row.layer)) },
+    { ...LABELS.depthLow, values: toNumbers(rows.map((row) => row.depthLowCm)) },
+    { ...LABELS.depthHigh, values: toNumbers(rows.map((row) => row.depthHighCm)) },
+    { ...LABELS.depthQuantity, values: toTextColumn(rows.map((row) => row.quantity)) },
+    { ...LABELS.figureMean, values: toNumbers(rows.map((row) => row.mean)) },
+    { ...LABELS.figureError, values: toNumbers(rows.map((row) => row.stdError)) },
+    { ...LABELS.unit, values: toTextColumn(rows.map((row) => row.unit)) },
+  ]);
+}
+
 type Columns = ReturnType<typeof decodeTable>;
 
 function textOf(columns: Columns, label: ColumnLabel): (row: number) => string | null {
@@ -172,4 +197,25 @@ export function decodeSpectra(bytes: Uint8Array): Spectrum[] {
     start = row;
   }
   return spectra;
+}
+
+/** The rows of depth.arrow. @throws Error when the bytes are no such table */
+export function decodeDepth(bytes: Uint8Array): DepthRow[] {
+  const columns = decodeTable(bytes);
+  const layer = textOf(columns, LABELS.depthLayer);
+  const quantity = textOf(columns, LABELS.depthQuantity);
+  const unit = textOf(columns, LABELS.unit);
+  const low = numbersOf(columns, LABELS.depthLow);
+  const high = numbersOf(columns, LABELS.depthHigh);
+  const mean = numbersOf(columns, LABELS.figureMean);
+  const stdError = numbersOf(columns, LABELS.figureError);
+  return Array.from(mean, (value, row) => ({
+    layer: layer(row) ?? '',
+    depthLowCm: low[row],
+    depthHighCm: high[row],
+    quantity: quantity(row) ?? '',
+    mean: known(value),
+    stdError: known(stdError[row]),
+    unit: unit(row) ?? '',
+  }));
 }

@@ -1,7 +1,7 @@
 /** Writing a run's result to a folder and reading it back. */
 import { readFileSync } from 'node:fs';
 import { join } from 'node:path';
-import type { QuantityRow, RunResult, Spectrum } from '../../engine/result.js';
+import type { DepthRow, QuantityRow, RunResult, Spectrum } from '../../engine/result.js';
 import { errors, ThicksetError } from '../errors.js';
 import {
   makeManifest,
@@ -12,10 +12,19 @@ import {
   type RunRecord,
 } from './manifest.js';
 import { replaceResult, type FileSystem } from './result-folder.js';
-import { decodeSpectra, decodeTotals, encodeSpectra, encodeTotals } from './result-tables.js';
+import {
+  decodeDepth,
+  decodeSpectra,
+  decodeTotals,
+  encodeDepth,
+  encodeSpectra,
+  encodeTotals,
+} from './result-tables.js';
 
 export const TOTALS_NAME = 'totals.arrow';
 export const SPECTRA_NAME = 'spectra.arrow';
+/** Only of runs with a depth profile. */
+export const DEPTH_NAME = 'depth.arrow';
 
 /** A result as its folder holds it. */
 export interface StoredResult {
@@ -23,6 +32,8 @@ export interface StoredResult {
   readonly totals: readonly QuantityRow[];
   /** Unknown bins are NaN. */
   readonly spectra: readonly Spectrum[];
+  /** Absent without a depth profile. */
+  readonly depth?: readonly DepthRow[];
 }
 
 /** A result with the files it is written as. */
@@ -36,10 +47,12 @@ export function packResult(result: RunResult, record: RunRecord): PackedResult {
     [TOTALS_NAME, encodeTotals(result.totals)],
     [SPECTRA_NAME, encodeSpectra(result.spectra)],
   ]);
+  const depth = result.depth ?? [];
+  if (depth.length > 0) files.set(DEPTH_NAME, encodeDepth(depth));
   const hashes = Object.fromEntries([...files].map(([name, content]) => [name, sha256(content)]));
   const manifest = makeManifest(result, record, hashes);
   files.set(MANIFEST_NAME, Buffer.from(`${JSON.stringify(manifest, null, 2)}\n`));
-  return { manifest, totals: result.totals, spectra: result.spectra, files };
+  return { manifest, totals: result.totals, spectra: result.spectra, depth, files };
 }
 
 /**
@@ -103,9 +116,20 @@ function readTable<T>(folder: string, name: string, manifest: Manifest, decode: 
  */
 export function readResult(folder: string): StoredResult {
   const manifest = readManifest(folder);
+  const hasDepth = manifest.files[DEPTH_NAME] !== undefined;
   return {
     manifest,
-    totals: readTable(folder, TOTALS_NAME, manifest, decodeTotals),
+    totals: withReliability(readTable(folder, TOTALS_NAME, manifest, decodeTotals), manifest),
     spectra: readTable(folder, SPECTRA_NAME, manifest, decodeSpectra),
+    ...(hasDepth ? { depth: readTable(folder, DEPTH_NAME, manifest, decodeDepth) } : {}),
   };
+}
+
+function withReliability(rows: readonly QuantityRow[], { reliability = [] }: Manifest): QuantityRow[] {
+  return rows.map((row) => {
+    const found = reliability.find(
+      ({ quantity, layer }) => quantity === row.quantity && layer === row.layer && row.lineKeV === null,
+    );
+    return found ? { ...row, reliability: { contributing: found.contributing, vov: found.vov } } : row;
+  });
 }

@@ -1,7 +1,9 @@
 /** Which figures of a run cannot be relied on yet. */
+import { isUnreliable } from '../../engine/reliability-verdict.js';
 import type { QuantityRow } from '../../engine/result.js';
 import type { Manifest, ManifestUntil } from '../result/manifest.js';
 import { relativeError } from './figure-format.js';
+import { isDose } from './quantities.js';
 
 /**
  * Common practice: a Monte Carlo mean with a relative standard error of a tenth is questionable, of a twentieth
@@ -14,6 +16,8 @@ export type Flaw =
   | 'imprecise'
   /** No history contributed: the value is below what so many histories can show. */
   | 'none_seen'
+  /** Few histories contributed, or very unequally: the standard error is itself uncertain. */
+  | 'unreliable'
   /** The run ended before this figure reached the precision asked for. */
   | 'short_of_until';
 
@@ -27,8 +31,14 @@ export function watchedRow(totals: readonly QuantityRow[], until: ManifestUntil)
 
 /** What is wrong with a figure; null where nothing is. */
 export function flawOf(row: QuantityRow, manifest: Manifest, watched: QuantityRow | null): Flaw | null {
+  if (row.mean === null && isDose(row.quantity)) {
+    return null; // not a matter of precision: the setup does not define it
+  }
   if (row.mean === 0 && !(Number(row.stdError) > 0)) {
     return 'none_seen';
+  }
+  if (row.reliability && Number(row.stdError) > 0 && isUnreliable(row.reliability)) {
+    return 'unreliable';
   }
   const error = relativeError(row.mean, row.stdError);
   const asked = manifest.run.until?.relative_error;

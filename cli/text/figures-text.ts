@@ -25,7 +25,12 @@ interface Scale {
 
 const PER_PHOTON: Scale = { title: 'per photon', factor: 1 };
 
-export const MARKS: Readonly<Record<Flaw, string>> = { imprecise: '*', none_seen: '*', short_of_until: '!' };
+export const MARKS: Readonly<Record<Flaw, string>> = {
+  imprecise: '*',
+  none_seen: '*',
+  unreliable: '?',
+  short_of_until: '!',
+};
 
 function scalesOf({ source }: Manifest): Scale[] {
   const scales = [PER_PHOTON];
@@ -83,8 +88,25 @@ function relativeText({ row, flaw }: FigureLine): string {
   return row.mean === null || row.mean === 0 ? '' : formatPercent(relativeError(row.mean, row.stdError));
 }
 
+/** Text of a figure of merit; null where they are not shown. */
+type Merit = ((row: QuantityRow) => string) | null;
+
+/** Figures of merit, 1/(error² · time inside workers), are shown of weighted runs, where they differ from figure to figure. */
+function meritFor({ reliability = [], timings }: Manifest): Merit {
+  if (reliability.length === 0 || !(timings.worker_s > 0)) return null;
+  return ({ mean, stdError }) => {
+    const error = relativeError(mean, stdError);
+    return error === null || error === 0 ? '' : formatNumber(1 / (error * error * timings.worker_s), 2);
+  };
+}
+
 /** A header, and one line for each figure. */
-function tabulate(figures: readonly FigureLine[], scales: readonly Scale[], style: Style): string[] {
+function tabulate(
+  figures: readonly FigureLine[],
+  scales: readonly Scale[],
+  style: Style,
+  merit: Merit = null,
+): string[] {
   const columns = scales.map((scale) =>
     alignFigures(
       figures.map((figure) => ({
@@ -95,15 +117,20 @@ function tabulate(figures: readonly FigureLine[], scales: readonly Scale[], styl
     ),
   );
   const relative = alignRight(figures.map(relativeText));
+  const merits = alignRight(figures.map(({ row }) => merit?.(row) ?? ''));
   const rows = figures.map(({ row, flaw }, at) => [
     row.quantity,
     row.layer === null ? '' : clip(row.layer),
     row.lineKeV === null ? '' : `${formatNumber(row.lineKeV, 6)} keV`,
     ...columns.map((column) => column[at]),
     relative[at],
+    merits[at],
     flaw === null ? '' : MARKS[flaw],
   ]);
-  return renderTable([['', '', '', ...scales.map(({ title }) => title), 'error', ''], ...rows]);
+  return renderTable([
+    ['', '', '', ...scales.map(({ title }) => title), 'error', merit ? 'merit' : '', ''],
+    ...rows,
+  ]);
 }
 
 /** A table of figures: the line above it, and its lines by group. */
@@ -112,8 +139,13 @@ export interface FiguresText {
   readonly byGroup: ReadonlyMap<Group, readonly string[]>;
 }
 
-function asTable(figures: readonly FigureLine[], scales: readonly Scale[], style: Style): FiguresText {
-  const [header, ...lines] = tabulate(figures, scales, style);
+function asTable(
+  figures: readonly FigureLine[],
+  scales: readonly Scale[],
+  style: Style,
+  merit: Merit = null,
+): FiguresText {
+  const [header, ...lines] = tabulate(figures, scales, style, merit);
   const byGroup = new Map<Group, string[]>();
   figures.forEach(({ group, flaw }, at) => {
     const line = flaw === null ? lines[at] : style.alert(lines[at]);
@@ -143,7 +175,7 @@ export function figuresText(result: StoredResult, style: Style): FiguresText[] {
   const extensive = figures.filter(({ row }) => isExtensive(row.quantity, row.unit));
   const [first, ...others] = scalesOf(result.manifest);
   return [
-    asTable(figures, [first], style),
+    asTable(figures, [first], style, meritFor(result.manifest)),
     ...fitScales(extensive, others, style).map((scales) => asTable(extensive, scales, style)),
   ];
 }

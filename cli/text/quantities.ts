@@ -40,20 +40,24 @@ const QUANTITIES: Readonly<Record<string, QuantityTraits>> = {
   pair_coincidence: { group: 'detectors', extensive: true },
   sum_interacting: { group: 'detectors', extensive: true },
   sum_full_energy: { group: 'detectors', extensive: true },
-  air_kerma: { group: 'dose', extensive: true },
-  ambient_dose: { group: 'dose', extensive: true },
-  effective_dose_ap: { group: 'dose', extensive: true },
-  dose_transmission: { group: 'dose', extensive: false },
-  buildup: { group: 'dose', extensive: false },
 };
+
+/** Figures of dose bear the name of their quantity, then what of it they are. */
+const DOSE_NAME =
+  /^(air_kerma|ambient_dose|effective_dose_ap|dose_transmission|buildup|(narrow_)?(half|tenth)_value_layer)/;
+
+/** Whether a figure belongs to dose. */
+export function isDose(quantity: string): boolean {
+  return DOSE_NAME.test(quantity);
+}
 
 /** The group of a figure; the interactions of a detector layer stand beside its peaks. */
 export function groupOf(quantity: string, inDetector: boolean): Group {
-  const group = QUANTITIES[quantity]?.group ?? 'other';
+  const group = isDose(quantity) ? 'dose' : (QUANTITIES[quantity]?.group ?? 'other');
   return group === 'layers' && inDetector && quantity === 'interacting' ? 'detectors' : group;
 }
 
-/** True where a figure per photon times photons per second is a rate. */
+/** True where a figure per photon times photons per second is a rate; rates of dose have a table of their own. */
 export function isExtensive(quantity: string, unit: string): boolean {
   return (QUANTITIES[quantity]?.extensive ?? false) && !/cm/.test(unit);
 }

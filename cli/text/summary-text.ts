@@ -3,7 +3,10 @@ import type { Spectrum, SpectrumTally, StopReason } from '../../engine/result.js
 import type { Manifest } from '../result/manifest.js';
 import type { StoredResult } from '../result/stored-result.js';
 import { clip } from '../show.js';
+import { LEAST_CONTRIBUTING, VOV_LIMIT } from '../../engine/reliability-verdict.js';
+import { CAUTION } from './caution.js';
 import { CONVERGED_BELOW, type Flaw } from './convergence.js';
+import { doseRateLines } from './dose-text.js';
 import { displayWidth } from './display-width.js';
 import { figuresText, flawsIn, MARKS } from './figures-text.js';
 import { formatCount, formatDuration, formatNumber } from './figure-format.js';
@@ -15,10 +18,6 @@ import { wrap } from './text-table.js';
 
 /** Which spectra are drawn: those of photons that leave and of detectors, every one, or none. */
 export type SpectraChoice = 'main' | 'all' | 'none';
-
-const CAUTION =
-  'These figures come from an idealised slab model. They support design; they replace no measurement, no local ' +
-  'code and no qualified expert.';
 
 const STOPPED: Readonly<Record<StopReason, string>> = {
   histories: 'all planned histories done',
@@ -71,6 +70,7 @@ function figureSections(result: StoredResult, style: Style): string[] {
   for (const { header, byGroup } of others) {
     lines.push('', ...headed('With this source', header, style), ...[...byGroup.values()].flat());
   }
+  lines.push(...doseRateLines(result, style));
   return lines;
 }
 
@@ -80,6 +80,7 @@ function legend(result: StoredResult, style: Style): string[] {
   const texts: Readonly<Record<Flaw, string | null>> = {
     none_seen: null,
     imprecise: `not converged: standard error above ${formatNumber(100 * CONVERGED_BELOW)} % of the value, or nothing seen; more histories help`,
+    unreliable: `not reliable: fewer than ${LEAST_CONTRIBUTING} histories contributed, or so unequally (relative variance of the variance above ${VOV_LIMIT}) that the error itself is uncertain; run ten times the histories`,
     short_of_until:
       until &&
       `${STOPPED[result.manifest.stopped]} before ${clip(until.quantity)} reached ${formatNumber(100 * until.relative_error)} %`,
@@ -127,6 +128,8 @@ function warningLines({ warnings }: Manifest, style: Style): string[] {
 export function summaryLines(result: StoredResult, style: Style, spectra: SpectraChoice): string[] {
   const { manifest } = result;
   const energyGap = formatNumber(manifest.balance.relative_error, 2);
+  const gapError = manifest.balance.relative_std_error;
+  const ofError = gapError === undefined ? '' : ` (standard error ${formatNumber(gapError, 2)})`;
   return [
     ...head(manifest, style),
     ...figureSections(result, style),
@@ -134,7 +137,7 @@ export function summaryLines(result: StoredResult, style: Style, spectra: Spectr
     ...spectraSections(result.spectra, spectra, style),
     ...warningLines(manifest, style),
     '',
-    ...wrap(`Energy in and energy accounted for differ by ${energyGap} of the whole.`, style.width),
+    ...wrap(`Energy in and energy accounted for differ by ${energyGap} of the whole${ofError}.`, style.width),
     ...wrap(CAUTION, style.width).map(style.note),
   ];
 }
