@@ -1,6 +1,8 @@
 import { describe, expect, it } from 'vitest';
 import { compile } from '../../engine/compile.js';
+import { cellOf } from '../../engine/energy-grid.js';
 import { fillAlias, maxMomentum, sampleDoppler, scatteredEnergy } from '../../engine/physics/doppler.js';
+import { INCOHERENT, interactAs, Site } from '../../engine/physics/interact.js';
 import { comptonEnergyRatio } from '../../engine/physics/klein-nishina.js';
 import { nextUniform, seedStream } from '../../engine/random.js';
 import { elementOf, resolveMaterial } from '../../materials/index.js';
@@ -83,6 +85,27 @@ describe('Doppler broadening', () => {
       expect(momentumOf(energyKeV, energyKeV - bindingKeV, 1 - 2 * v)).toBeCloseTo(most, 9);
       const atRest = scatteredEnergy(energyKeV, v, 0);
       expect(Math.abs(atRest / (energyKeV * comptonEnergyRatio(energyKeV, v)) - 1)).toBeLessThan(1e-12);
+    }
+  });
+
+  it('finds an electron for nearly every scattering, even of soft photons', () => {
+    for (const { z, energyKeV, most } of [
+      { z: 1, energyKeV: 1, most: 0.05 }, // one shell of 13.6 eV; scattering is a hundredth of absorption here
+      { z: 1, energyKeV: 10, most: 1e-4 },
+      { z: 8, energyKeV: 1, most: 2e-3 },
+      { z: 53, energyKeV: 3, most: 1e-3 },
+      { z: 82, energyKeV: 1, most: 2e-3 },
+      { z: 82, energyKeV: 30, most: 1e-4 },
+    ]) {
+      const material = resolveMaterial(elementOf(z).symbol, 1);
+      const problem = compile(slabSetup({ stack: [[material, 1]], energyKeV, physics: ALL, seed: '' }, 1));
+      const site = new Site();
+      seedStream(site.random, `given up ${z}`, 0);
+      for (let i = 0; i < 10_000; i++) {
+        site.energyKeV = energyKeV;
+        interactAs(INCOHERENT, problem, site, problem.slotOfLayer[0], cellOf(problem.grid, energyKeV));
+      }
+      expect(site.dopplerGivenUp / 10_000, `Z = ${z} at ${energyKeV} keV`).toBeLessThanOrEqual(most);
     }
   });
 
