@@ -97,6 +97,12 @@ export const errors = {
       `${directory}: holds an unfinished run`,
       'go on with --resume, replace it with --overwrite, or choose another folder with --out',
     ),
+  sweepExists: (directory: string) =>
+    new ThicksetError(
+      'output_exists',
+      `${directory}: holds a sweep already`,
+      'go on with --resume, replace it with --overwrite, or choose another folder with --out',
+    ),
   outputForeign: (path: string, what: string) =>
     new ThicksetError('output_foreign', `${path}: ${what}`, 'choose another folder with --out'),
   outputNotWritable: (path: string, cause: unknown) =>
@@ -109,9 +115,25 @@ export const errors = {
   diskFull: (path: string, cause: unknown) =>
     new ThicksetError('disk_full', `${path}: no space left`, 'free some space and run again', cause),
   resultMissing: (path: string) =>
-    new ThicksetError('result_missing', `${path}: no results here`, 'name a folder written by thickset run'),
+    new ThicksetError(
+      'result_missing',
+      `${path}: no results here`,
+      'name a folder written by thickset run or thickset sweep',
+    ),
+  isShard: (path: string) =>
+    new ThicksetError(
+      'result_missing',
+      `${path}: a shard of a run has no figures of its own`,
+      'put all shards together with thickset merge',
+    ),
   resultDamaged: (path: string, what: string, cause?: unknown) =>
     new ThicksetError('result_damaged', `${path}: damaged, ${what}`, 'run the setup again', cause),
+  journalDamaged: (path: string) =>
+    new ThicksetError(
+      'result_damaged',
+      `${path}: damaged, its beginning is not that of a sweep`,
+      'start anew with --overwrite, or in another folder',
+    ),
   folderInUse: (folder: string, holder: string, wayOut: string) =>
     new ThicksetError('folder_in_use', `${folder}: in use by ${holder}`, wayOut),
   checkpointUnfit: (what: string, cause?: unknown) =>
@@ -345,6 +367,39 @@ export const complaints = {
     new Complaint('contradiction', rule, wayOut, false),
   notAvailable: (rule: string, wayOut: string | null = null) =>
     new Complaint('not_available', rule, wayOut, false),
+  fileOutsideSweep: () =>
+    new Complaint(
+      'file_outside',
+      'must lie in the folder of the sweep file or below it',
+      'copy the file there and give its name alone',
+    ),
+  emptySweep: () => new Complaint('missing_key', 'is empty', 'a sweep needs at least base and vary', false),
+  samePoint: (first: number, second: number) =>
+    new Complaint(
+      'duplicate_name',
+      `points ${first} and ${second} are the same`,
+      'remove one of them',
+      false,
+    ),
+  energiesInSweep: () =>
+    new Complaint('contradiction', 'is a sweep of its own', 'give source.energy, and vary it', false),
+  noPath: () =>
+    new Complaint('bad_text', 'is no path into a setup', 'write it as in stack.shield.thickness', false),
+  noWay: (why: string) =>
+    new Complaint('unknown_name', `leads nowhere: ${why}`, 'give the place of a value in the setup', false),
+  noMeasure: () =>
+    new Complaint(
+      'not_a_quantity',
+      'must be a number, with its unit where it has one',
+      'list other values one by one',
+    ),
+  tooManyPoints: (points: number, limit: number) =>
+    new Complaint(
+      'count',
+      `asks for ${showNumber(points)} points, the limit is ${showNumber(limit)}`,
+      'take fewer values, or samples',
+      false,
+    ),
   tooManyBins: (bins: number, limit: number) =>
     new Complaint(
       'count',

@@ -10,7 +10,7 @@ import { extentSchema, materialsSchema, stackSchema } from './setup/schema-layer
 import { sourceSchema } from './setup/schema-source.js';
 import { physicsSchema, runSchema, tallySchema } from './setup/schema-tally.js';
 
-const seedSchema = field(
+export const seedSchema = field(
   {
     type: ['string', 'integer'],
     description: 'Any text; the same seed gives the same results.',

@@ -3,7 +3,7 @@ export type { BatchPlan, Shard } from './batch-plan.js';
 export { decodeState, encodeState } from './checkpoint.js';
 export { joinShards } from './join-states.js';
 export { Run, type RunStart } from './run.js';
-export type { RunState } from './run-sums.js';
+export type { RunState, Sums } from './run-sums.js';
 export { playRun, simulate } from './simulate.js';
 export { Simulator, type Playlist } from './simulator.js';
 export { EngineError, type EngineErrorCode } from './errors.js';

@@ -22,9 +22,11 @@ export type DiskCalls = Pick<
 
 export const disk: DiskCalls = nodeFs;
 
-/** Writes all bytes; the system may take them in several pieces. */
-export function writeAll(file: number, bytes: Uint8Array, system: DiskCalls = disk): void {
-  for (let at = 0; at < bytes.length;) at += system.writeSync(file, bytes, at, bytes.length - at);
+/** Writes all bytes from a place of the file on; the system may take them in several pieces. */
+export function writeAll(file: number, bytes: Uint8Array, system: DiskCalls = disk, from = 0): void {
+  for (let at = 0; at < bytes.length;) {
+    at += system.writeSync(file, bytes, at, bytes.length - at, from + at);
+  }
 }
 
 /**

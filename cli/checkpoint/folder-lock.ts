@@ -52,6 +52,13 @@ export function lockFolder(folder: string): FolderLock {
   throw errors.folderInUse(folder, 'another process', 'wait for it to end');
 }
 
+/** Whether a living process works in a folder. */
+export function isLocked(folder: string): boolean {
+  const path = join(folder, LOCK_NAME);
+  const text = read(path);
+  return text !== null && isHeld(text, path);
+}
+
 function makeLock(path: string, own: string): FolderLock {
   return {
     renew: () => fs.utimesSync(path, new Date(), new Date()),

@@ -4,8 +4,7 @@ import { decodeState, EngineError, encodeState, type RunState, type Timings } fr
 import { errors } from '../errors.js';
 import { readIfThere, replaceFile } from './durable-file.js';
 import type { RunIdentity } from './identity.js';
-
-export const SHARD_NAME = 'shard.bin';
+import { SHARD_NAME } from './names.js';
 
 export interface ShardResult {
   readonly identity: RunIdentity;

@@ -48,24 +48,30 @@ export function progressText(progress: Progress, plusMinus: string): string {
   return parts.join(', ');
 }
 
+/** A line that is rewritten in place; `text` is asked for only when it is time to show it. */
+export interface RewrittenLine {
+  readonly show: (text: () => string) => void;
+  /** Removes the line, so that what follows starts on a clean one. */
+  readonly clear: () => void;
+}
+
 /** A line written through `write` and kept to `width` cells. */
-export function makeProgressLine(
+export function makeRewrittenLine(
   write: (text: string) => void,
   width: number,
-  plusMinus: string,
   now: () => number = () => performance.now(),
-): ProgressLine {
+): RewrittenLine {
   let shownAt = -Infinity;
   let shown = false;
   return {
-    update: (progress) => {
+    show: (text) => {
       if (now() - shownAt < SHORTEST_INTERVAL_MS) {
         return;
       }
       shownAt = now();
       shown = true;
       // One cell is left free: a full line would wrap and could not be rewritten.
-      write(REWRITE + truncate(progressText(progress, plusMinus), width - 1));
+      write(REWRITE + truncate(text(), width - 1));
     },
     clear: () => {
       if (shown) {
@@ -73,6 +79,20 @@ export function makeProgressLine(
         shown = false;
       }
     },
+  };
+}
+
+/** The progress of a run on such a line. */
+export function makeProgressLine(
+  write: (text: string) => void,
+  width: number,
+  plusMinus: string,
+  now?: () => number,
+): ProgressLine {
+  const line = makeRewrittenLine(write, width, now);
+  return {
+    update: (progress) => line.show(() => progressText(progress, plusMinus)),
+    clear: line.clear,
   };
 }
 

@@ -111,10 +111,11 @@ describe('help', () => {
       "
       Usage: thickset summary [options] <folder>
 
-      show the figures and spectra of a finished run
+      show the figures and spectra of a finished run, or the points of a sweep, also
+      while it runs
 
       Arguments:
-        folder             folder written by thickset run
+        folder             folder written by thickset run or thickset sweep
 
       Options:
         --spectra <which>  spectra to draw: those that leave and pulse heights, every
@@ -303,7 +304,7 @@ test('a summary of nothing ends with 4', async () => {
   expect(await thickset('summary', 'nowhere')).toEqual({
     code: 4,
     stdout: '',
-    stderr: 'nowhere/manifest.json: no results here; name a folder written by thickset run\n',
+    stderr: 'nowhere/manifest.json: no results here; name a folder written by thickset run or thickset sweep\n',
   });
 });
 

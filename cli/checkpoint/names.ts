@@ -1,0 +1,6 @@
+/** Names of files by which folders are told apart. */
+
+/** The finished state of one shard of a run. */
+export const SHARD_NAME = 'shard.bin';
+/** Everything a sweep has found out. */
+export const JOURNAL_NAME = 'journal.bin';

@@ -1,0 +1,141 @@
+/** `thickset sweep`: many points of one setup in, one table out. */
+import { availableParallelism } from 'node:os';
+import { Option, type Command } from 'commander';
+import { Simulator, type Shard, type Warning } from '../engine/index.js';
+import { parseShard, parseThreads, parseTime } from './command-options.js';
+import { errors, EXIT_CODES } from './errors.js';
+import { onInterrupt } from './interrupt.js';
+import { MANIFEST_NAME } from './result/manifest.js';
+import { encodePoints } from './sweep/points-table.js';
+import type { BeginRecord } from './sweep/records.js';
+import { POINTS_NAME, SweepFolder } from './sweep/sweep-folder.js';
+import { beginRecord } from './sweep/sweep-identity.js';
+import { countStatus, encodeManifest } from './sweep/sweep-manifest.js';
+import { showSweepProgress } from './sweep/sweep-progress.js';
+import { readSweepFile, type SweepFile } from './sweep/sweep-reader.js';
+import { SweepRunner, type SweepEnd } from './sweep/sweep-runner.js';
+import { printSweep } from './sweep/sweep-summary.js';
+import { formatCount } from './text/figure-format.js';
+
+interface SweepOptions {
+  readonly out?: string;
+  readonly overwrite?: boolean;
+  readonly resume?: boolean;
+  readonly shard?: Shard;
+  readonly checkpoint: number;
+  readonly threads?: number;
+  readonly quiet?: boolean;
+  readonly json?: boolean;
+}
+
+/** A power cut costs no more work on the points under way than this. */
+const CHECKPOINT_S = 30;
+
+export function registerSweepCommand(program: Command): void {
+  program
+    .command('sweep')
+    .description('run a setup at many points and write one table of them')
+    .argument('<sweep>', 'sweep file (YAML)')
+    .option('--out <folder>', 'folder for the table')
+    .option('--overwrite', 'replace the sweep that is in the folder')
+    .option('--resume', 'go on with the sweep in the folder, if there is one')
+    .addOption(
+      new Option('--checkpoint <time>', 'how often the points under way are saved')
+        .argParser(parseTime)
+        .default(CHECKPOINT_S, `${CHECKPOINT_S} s`),
+    )
+    .option('--shard <i/n>', 'run part i of n only; thickset merge puts the parts together', parseShard)
+    .option('--threads <number>', 'worker threads; default: one for each core', parseThreads)
+    .option('--quiet', 'no progress and no warnings on stderr')
+    .option('--json', 'print one JSON object instead of the summary')
+    .action(sweepCommand);
+}
+
+/** Read and check, run, write, summarise. */
+async function sweepCommand(path: string, options: SweepOptions): Promise<void> {
+  const file = readSweepFile(path);
+  printWarnings(file.warnings, options);
+  if (options.out === undefined) throw errors.usage('option --out <folder> is missing');
+  const begin = beginRecord(file, options.shard ?? null);
+  const { overwrite = false, resume = false } = options;
+  const folder = new SweepFolder(options.out, { overwrite, resume }, begin);
+  try {
+    reportDamage(folder, options);
+    await play(file, begin, folder, options);
+  } finally {
+    folder.release();
+  }
+}
+
+async function play(
+  { sweep }: SweepFile,
+  begin: BeginRecord,
+  folder: SweepFolder,
+  options: SweepOptions,
+): Promise<void> {
+  const threads = options.threads ?? availableParallelism();
+  const interrupt = onInterrupt(() =>
+    say('\nFinishing the batches in hand; press Ctrl-C again to stop at once.'),
+  );
+  const progress = await showSweepProgress(sweep, options.quiet ?? false);
+  const simulator = new Simulator(threads);
+  const runner = new SweepRunner(sweep, folder, simulator, {
+    shard: options.shard ?? null,
+    checkpointS: options.checkpoint,
+    signal: interrupt.signal,
+    onProgress: progress?.update,
+    warn: (message) => printWarnings([{ code: 'state', message, count: 1 }], options),
+  });
+  let end: SweepEnd;
+  try {
+    end = await runner.run();
+  } finally {
+    progress?.clear();
+    await simulator.close();
+  }
+  writeTable(folder, begin, runner, threads);
+  folder.close();
+  interrupt.dispose();
+  const { entries: points, elapsedS } = runner;
+  const state = end === 'interrupted' ? 'stopped' : 'ended';
+  await printSweep({ begin, points, elapsedS, state }, folder.folder, { json: options.json, threads });
+  conclude(end, begin, runner);
+}
+
+function writeTable(folder: SweepFolder, begin: BeginRecord, runner: SweepRunner, threads: number): void {
+  const { entries, elapsedS } = runner;
+  const files = { [POINTS_NAME]: encodePoints(begin, entries) };
+  const manifest = encodeManifest(begin, entries, { elapsedS, threads }, files);
+  for (const [name, bytes] of Object.entries(files)) folder.writeFile(name, bytes);
+  folder.writeFile(MANIFEST_NAME, manifest);
+}
+
+function conclude(end: SweepEnd, begin: BeginRecord, { entries }: SweepRunner): void {
+  if (end === 'interrupted') {
+    say('Interrupted. Go on with --resume.');
+    process.exitCode = EXIT_CODES.interrupted;
+    return;
+  }
+  const { failed, not_begun: notBegun } = countStatus(begin, entries);
+  if (failed > 0) say(`${formatCount(failed)} points failed.`);
+  if (notBegun > 0) say(`There was no time for ${formatCount(notBegun)} points.`);
+  if (failed + notBegun > 0) process.exitCode = EXIT_CODES.incomplete;
+}
+
+/** What was lost of the journal is found out anew. */
+function reportDamage({ log }: SweepFolder, options: SweepOptions): void {
+  if (log === null || log.damagedAt.length === 0) return;
+  const places = log.damagedAt.join(', ');
+  const message = `the journal is damaged at byte ${places}; what it told there is played again`;
+  printWarnings([{ code: 'journal', message, count: 1 }], options);
+}
+
+function printWarnings(warnings: readonly Warning[], { quiet }: SweepOptions): void {
+  for (const { message, count } of quiet ? [] : warnings) {
+    say(`warning: ${message}${count > 1 ? ` (${formatCount(count)} times)` : ''}`);
+  }
+}
+
+function say(text: string): void {
+  process.stderr.write(`${text}\n`);
+}
