@@ -6,11 +6,10 @@
  * been deeper would have come as far without all that lies deeper, and would have left.
  */
 import { W, Z } from '../geometry/index.js';
-import { DOSE_LINE } from './dose-lines.js';
 import { DEEPEST } from './deep-photons.js';
 import type { DeepScores } from './deep-scores.js';
 import { ENERGY, WEIGHT } from './photon.js';
-import { CELL_LENGTH, type Problem } from './problem.js';
+import { CELL_LENGTH, DOSE_LINE, type Problem } from './problem.js';
 import { nextUniform, type StreamState } from './random.js';
 
 /** Optical path after which half of the flights are followed on, with twice the weight. */

@@ -5,9 +5,8 @@
  * Near a face 1/|w| has no bound, and drawing w as it comes gives dose a variance without end. There the azimuth of the
  * score is drawn anew, with a density in proportion to 1/(|w| + τ) that cancels it.
  */
-import { DOSE_LINE } from './dose-lines.js';
 import type { DeepScores } from './deep-scores.js';
-import type { Problem } from './problem.js';
+import { DOSE_LINE, type Problem } from './problem.js';
 import { nextUniform, type StreamState } from './random.js';
 import { FIGURE } from './tally-layout.js';
 

@@ -5,7 +5,6 @@
 import { U, V, W, X, Y, Z } from '../geometry/index.js';
 import { depthToFar, depthToFront } from './deep-paths.js';
 import type { DeepScores } from './deep-scores.js';
-import { DOSE_LINE } from './dose-lines.js';
 import { cellOf } from './energy-grid.js';
 import { coherentDensity, incoherentDensity } from './physics/angular-density.js';
 import { forwardDensity } from './physics/bremsstrahlung.js';
@@ -13,7 +12,7 @@ import { sampleDoppler } from './physics/doppler.js';
 import type { Site } from './physics/interact.js';
 import { comptonEnergyRatio } from './physics/klein-nishina.js';
 import { ENERGY } from './photon.js';
-import type { Problem } from './problem.js';
+import { DOSE_LINE, type Problem } from './problem.js';
 import { nextUniform } from './random.js';
 
 /** What workers need to score at dose points. */

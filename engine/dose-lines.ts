@@ -2,11 +2,8 @@
 import { doseCoefficient } from '../materials/index.js';
 import { fillLines } from './compile-slots.js';
 import type { EnergyGrid } from './energy-grid.js';
-import { sharedDoubles } from './problem.js';
+import { DOSE_LINE, sharedDoubles } from './problem.js';
 import { MAX_ENERGY_KEV, type DoseQuantity } from './setup.js';
-
-/** Numbers a cell has for each quantity: the line a + b E. */
-export const DOSE_LINE = 2;
 
 /** Dose per fluence (pGy cm² or pSv cm²) by quantity and cell, straight lines over each cell. */
 export function makeDoseLines(grid: EnergyGrid, quantities: readonly DoseQuantity[]): Float64Array {

@@ -18,6 +18,9 @@ import type { SolidProblem } from './solid-source.js';
  */
 export const CELL_LENGTH = 8;
 
+/** Numbers per cell and dose quantity in `doseLines`: the line a + b E. */
+export const DOSE_LINE = 2;
+
 /** Which history loop plays the problem: chosen once per run, so that infinite stacks pay nothing for finite ones. */
 export type Kernel = 'slab' | 'solid' | 'deep';
 

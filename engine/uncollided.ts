@@ -7,11 +7,10 @@
  * of layers without end gives, summed over the plane, what sources spread over the plane give at one place.
  */
 import { attenuationPerCm } from './deep-grid.js';
-import { DOSE_LINE } from './dose-lines.js';
 import type { DoseLayout } from './dose-layout.js';
 import { cellOf } from './energy-grid.js';
 import { exponentialIntegral } from './exponential-integrals.js';
-import type { Problem } from './problem.js';
+import { DOSE_LINE, type Problem } from './problem.js';
 import type { DosePoint } from './setup.js';
 import { FIGURE } from './tally-layout.js';
 import { uncollidedAtPoint } from './uncollided-points.js';
