@@ -7,6 +7,7 @@ import { packageVersion } from './version.js';
 const COMMANDS: Readonly<Record<string, (program: Command) => Promise<void>>> = {
   run: async (program) => (await import('./run-command.js')).registerRunCommand(program),
   sweep: async (program) => (await import('./sweep-command.js')).registerSweepCommand(program),
+  size: async (program) => (await import('./size-command.js')).registerSizeCommand(program),
   merge: async (program) => (await import('./merge-command.js')).registerMergeCommand(program),
   summary: async (program) => (await import('./summary-command.js')).registerSummaryCommand(program),
   material: async (program) => (await import('./material-command.js')).registerMaterialCommand(program),

@@ -5,6 +5,16 @@ export { joinShards } from './join-states.js';
 export { Run, type RunStart } from './run.js';
 export type { RunState, Sums } from './run-sums.js';
 export { playRun, simulate } from './simulate.js';
+export type { GoalState, SizeGoal } from './sizing-goal.js';
+export type { Found, PlaySetup, Trial } from './sizing-search.js';
+export {
+  sizeLayer,
+  tradeOff,
+  type Confirmation,
+  type EqualDosePair,
+  type SizeAnswer,
+  type SizeRequest,
+} from './sizing.js';
 export { Simulator, type Playlist } from './simulator.js';
 export { EngineError, type EngineErrorCode } from './errors.js';
 export type * from './setup.js';
