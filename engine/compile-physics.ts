@@ -15,7 +15,11 @@ import {
 import { atNodes, compositionKey, fillLines, type Slot } from './compile-slots.js';
 import type { EnergyGrid } from './energy-grid.js';
 import { RADIATION_CUTOFFS_KEV } from './local-cutoff.js';
-import { makeBremsstrahlungTables, type BremsstrahlungTables } from './physics/bremsstrahlung-tables.js';
+import {
+  makeBremsstrahlungTables,
+  sampleSlowing,
+  type BremsstrahlungTables,
+} from './physics/bremsstrahlung-tables.js';
 import { COHERENT_LENGTH, fillCoherentTable } from './physics/coherent.js';
 import { fillAlias, fillProfile, PROFILE_LENGTH, type DopplerTables } from './physics/doppler.js';
 import {
@@ -273,7 +277,8 @@ function shellShares(slot: Slot, nodesKeV: Float64Array) {
 /** Thick-target bremsstrahlung tables of a slot, one per emission cutoff; none where nothing radiates. */
 export function makeRadiation(slot: Slot, topKeV: number, physics: Physics): BremsstrahlungTables[] {
   if (!physics.bremsstrahlung || slot.constituents.length === 0) return [];
+  const slowing = sampleSlowing(slot);
   return RADIATION_CUTOFFS_KEV.filter((cutoff) => cutoff === 0 || 2 * cutoff < topKeV).map((cutoff) =>
-    makeBremsstrahlungTables(slot, topKeV, Math.max(cutoff, physics.cutoffKeV)),
+    makeBremsstrahlungTables(slot, topKeV, Math.max(cutoff, physics.cutoffKeV), slowing),
   );
 }

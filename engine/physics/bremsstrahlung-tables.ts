@@ -8,6 +8,7 @@
  */
 import { bremsstrahlungSpectrum, electronStopping, type Matter } from '../../materials/index.js';
 import { bucketOf, bucketStartKeV } from '../energy-grid.js';
+import { logPlace, logSamples, valueAtPlace, type LogGrid } from './log-sampled.js';
 import { transportCoefficient } from './electron-scattering.js';
 
 export interface BremsstrahlungTables {
@@ -48,15 +49,36 @@ interface RowSums {
   readonly soft: Float64Array;
 }
 
+/** How electrons slow down and turn in a material, sampled once for tables of several cutoffs. */
+export interface Slowing {
+  /** Collision stopping power (MeV cm²/g) and transport coefficient (cm²/g) at the nodes of SLOWING_GRID. */
+  readonly collision: Float64Array;
+  readonly transport: Float64Array;
+}
+
+/** Kinetic energies in keV: steps of 2.5 %, over which both run straight to 1e-4. */
+const SLOWING_GRID: LogGrid = { low: 1, high: MAX_ENERGY_KEV, nodes: 400 };
+
+/** Samples the slowing down of electrons in a material. */
+export function sampleSlowing(material: Matter): Slowing {
+  const within = (energyKeV: number) => Math.min(MAX_ENERGY_KEV, energyKeV);
+  return {
+    collision: logSamples((energy) => electronStopping(material, within(energy)).collision, SLOWING_GRID),
+    transport: logSamples((energy) => transportCoefficient(material, within(energy)), SLOWING_GRID),
+  };
+}
+
 /**
  * @param topKeV highest kinetic energy to be asked for, at most 20 000 keV
  * @param cutoffKeV lowest photon energy emitted, at least 1 keV
+ * @param slowing of the same material
  * @throws MaterialError for energies out of range
  */
 export function makeBremsstrahlungTables(
   material: Matter,
   topKeV: number,
   cutoffKeV: number,
+  slowing: Slowing = sampleSlowing(material),
 ): BremsstrahlungTables {
   const top = Math.min(MAX_ENERGY_KEV, Math.max(topKeV, 2 * cutoffKeV));
   const span = Math.log(top / cutoffKeV);
@@ -76,7 +98,7 @@ export function makeBremsstrahlungTables(
     cumulative: shared(rows * NODES),
   };
   for (let i = 0; i < NODES; i++) tables.nodes[i] = 1 - (1 - i / (NODES - 1)) ** 2;
-  slowDown(material, tables, fillRows(material, tables));
+  slowDown(slowing, tables, fillRows(material, tables));
   return tables;
 }
 
@@ -112,7 +134,7 @@ function fillRows(material: Matter, tables: BremsstrahlungTables): RowSums {
 }
 
 /** Integrates number and turning from the cutoff upwards. */
-function slowDown(material: Matter, tables: BremsstrahlungTables, sums: RowSums): void {
+function slowDown(slowing: Slowing, tables: BremsstrahlungTables, sums: RowSums): void {
   const { cutoffKeV, step, photons, silent, turning, rows, rowStep } = tables;
   for (let j = 0; j < STEPS; j++) {
     photons[j + 1] = photons[j];
@@ -123,10 +145,11 @@ function slowDown(material: Matter, tables: BremsstrahlungTables, sums: RowSums)
       const row = Math.min(Math.floor(logRatio / rowStep), rows - 2);
       const weight = logRatio / rowStep - row;
       const mix = (values: Float64Array) => values[row] + weight * (values[row + 1] - values[row]);
-      const stopping = electronStopping(material, electronKeV).collision + mix(sums.soft);
+      const place = logPlace(SLOWING_GRID, electronKeV);
+      const stopping = valueAtPlace(slowing.collision, place) + mix(sums.soft);
       const path = ((step / 2) * electronKeV) / 1000 / stopping;
       photons[j + 1] += path * mix(sums.density) * logRatio;
-      turning[j + 1] += path * transportCoefficient(material, electronKeV);
+      turning[j + 1] += path * valueAtPlace(slowing.transport, place);
     }
   }
   for (let bucket = 0; bucket < silent.length; bucket++) {
