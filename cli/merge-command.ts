@@ -1,11 +1,17 @@
 /** `thickset merge`: the shards of a run or of a sweep in, the files of the undivided one out. */
+import { existsSync } from 'node:fs';
+import { join } from 'node:path';
 import type { Command } from 'commander';
 import { mergeRun } from './checkpoint/merge-run.js';
-import { readShard, type ShardResult } from './checkpoint/shard-file.js';
-import type { Part } from './checkpoint/merge-parts.js';
-import { errors } from './errors.js';
+import { JOURNAL_NAME } from './checkpoint/names.js';
+import { readShard } from './checkpoint/shard-file.js';
+import { errors, EXIT_CODES } from './errors.js';
 import { checkResultFolder, replaceResult } from './result/result-folder.js';
 import { printResult } from './summary-command.js';
+import { mergeSweep } from './sweep/merge-sweep.js';
+import { readSweepLog } from './sweep/sweep-log.js';
+import { countStatus } from './sweep/sweep-manifest.js';
+import { printSweep } from './sweep/sweep-summary.js';
 
 interface MergeOptions {
   readonly out: string;
@@ -25,14 +31,30 @@ export function registerMergeCommand(program: Command): void {
 }
 
 async function mergeCommand(folders: readonly string[], options: MergeOptions): Promise<void> {
-  const runs = folders.map((folder) => ({ folder, content: readShard(folder) }));
-  if (!runs.every(isShard)) throw errors.resultMissing(runs.find((part) => !isShard(part))!.folder);
-  checkResultFolder(options.out, options.overwrite ?? false);
-  const packed = mergeRun(runs);
-  replaceResult(options.out, packed.files);
-  await printResult(packed, options.out, { json: options.json, spectra: 'none' });
+  if (existsSync(join(folders[0], JOURNAL_NAME))) await mergeSweeps(folders, options);
+  else await mergeRuns(folders, options);
 }
 
-function isShard(part: Part<ShardResult | null>): part is Part<ShardResult> {
-  return part.content !== null;
+async function mergeRuns(folders: readonly string[], { out, overwrite, json }: MergeOptions): Promise<void> {
+  const parts = folders.map((folder) => ({ folder, content: present(readShard(folder), folder) }));
+  checkResultFolder(out, overwrite ?? false);
+  const packed = mergeRun(parts);
+  replaceResult(out, packed.files);
+  await printResult(packed, out, { json, spectra: 'none' });
+}
+
+async function mergeSweeps(
+  folders: readonly string[],
+  { out, overwrite, json }: MergeOptions,
+): Promise<void> {
+  const parts = folders.map((folder) => ({ folder, content: present(readSweepLog(folder), folder) }));
+  const view = mergeSweep(parts, out, overwrite ?? false);
+  await printSweep(view, out, { json });
+  const { failed, not_begun: notBegun } = countStatus(view.begin, view.points);
+  if (failed + notBegun > 0) process.exitCode = EXIT_CODES.incomplete;
+}
+
+function present<T>(content: T | null, folder: string): T {
+  if (content === null) throw errors.shardsDoNotFit(`${folder}: holds no shard`);
+  return content;
 }

@@ -5,22 +5,24 @@ import { Simulator, type Shard, type Warning } from '../engine/index.js';
 import { parseShard, parseThreads, parseTime } from './command-options.js';
 import { errors, EXIT_CODES } from './errors.js';
 import { onInterrupt } from './interrupt.js';
-import { MANIFEST_NAME } from './result/manifest.js';
-import { encodePoints } from './sweep/points-table.js';
+import { calibrate, printDryRun } from './sweep/dry-run.js';
+import { pointsOf } from './sweep/points-table.js';
 import type { BeginRecord } from './sweep/records.js';
-import { POINTS_NAME, SweepFolder } from './sweep/sweep-folder.js';
+import { SweepFolder } from './sweep/sweep-folder.js';
 import { beginRecord } from './sweep/sweep-identity.js';
-import { countStatus, encodeManifest } from './sweep/sweep-manifest.js';
+import { countStatus } from './sweep/sweep-manifest.js';
 import { showSweepProgress } from './sweep/sweep-progress.js';
 import { readSweepFile, type SweepFile } from './sweep/sweep-reader.js';
 import { SweepRunner, type SweepEnd } from './sweep/sweep-runner.js';
 import { printSweep } from './sweep/sweep-summary.js';
+import { writeTable } from './sweep/sweep-table.js';
 import { formatCount } from './text/figure-format.js';
 
 interface SweepOptions {
   readonly out?: string;
   readonly overwrite?: boolean;
   readonly resume?: boolean;
+  readonly dryRun?: boolean;
   readonly shard?: Shard;
   readonly checkpoint: number;
   readonly threads?: number;
@@ -37,6 +39,7 @@ export function registerSweepCommand(program: Command): void {
     .description('run a setup at many points and write one table of them')
     .argument('<sweep>', 'sweep file (YAML)')
     .option('--out <folder>', 'folder for the table')
+    .option('--dry-run', 'list and check the points and tell the expected time; nothing is written')
     .option('--overwrite', 'replace the sweep that is in the folder')
     .option('--resume', 'go on with the sweep in the folder, if there is one')
     .addOption(
@@ -55,6 +58,7 @@ export function registerSweepCommand(program: Command): void {
 async function sweepCommand(path: string, options: SweepOptions): Promise<void> {
   const file = readSweepFile(path);
   printWarnings(file.warnings, options);
+  if (options.dryRun) return dryRun(file, options);
   if (options.out === undefined) throw errors.usage('option --out <folder> is missing');
   const begin = beginRecord(file, options.shard ?? null);
   const { overwrite = false, resume = false } = options;
@@ -64,6 +68,19 @@ async function sweepCommand(path: string, options: SweepOptions): Promise<void> 
     await play(file, begin, folder, options);
   } finally {
     folder.release();
+  }
+}
+
+async function dryRun(file: SweepFile, options: SweepOptions): Promise<void> {
+  const { sweep } = file;
+  const begin = beginRecord(file, options.shard ?? null);
+  const points = pointsOf(begin.points, begin.shard);
+  const simulator = new Simulator(options.threads ?? availableParallelism());
+  try {
+    const result = await calibrate(sweep, points, simulator);
+    await printDryRun(begin, points, result, simulator.threads, options.json ?? false);
+  } finally {
+    await simulator.close();
   }
 }
 
@@ -93,21 +110,13 @@ async function play(
     progress?.clear();
     await simulator.close();
   }
-  writeTable(folder, begin, runner, threads);
+  const { entries: points, elapsedS } = runner;
+  writeTable(folder, begin, points, { elapsedS, threads });
   folder.close();
   interrupt.dispose();
-  const { entries: points, elapsedS } = runner;
   const state = end === 'interrupted' ? 'stopped' : 'ended';
   await printSweep({ begin, points, elapsedS, state }, folder.folder, { json: options.json, threads });
   conclude(end, begin, runner);
-}
-
-function writeTable(folder: SweepFolder, begin: BeginRecord, runner: SweepRunner, threads: number): void {
-  const { entries, elapsedS } = runner;
-  const files = { [POINTS_NAME]: encodePoints(begin, entries) };
-  const manifest = encodeManifest(begin, entries, { elapsedS, threads }, files);
-  for (const [name, bytes] of Object.entries(files)) folder.writeFile(name, bytes);
-  folder.writeFile(MANIFEST_NAME, manifest);
 }
 
 function conclude(end: SweepEnd, begin: BeginRecord, { entries }: SweepRunner): void {

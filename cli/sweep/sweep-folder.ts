@@ -96,9 +96,13 @@ export class SweepFolder {
   }
 
   writeSpectra(point: number, spectra: readonly Spectrum[]): void {
+    this.writeSpectraFile(point, encodeSpectra(spectra));
+  }
+
+  writeSpectraFile(point: number, bytes: Uint8Array): void {
     this.guarded(() => {
       makeFolders(resolve(this.folder, SPECTRA_FOLDER));
-      replaceFile(spectraPath(this.folder, point), encodeSpectra(spectra));
+      replaceFile(spectraPath(this.folder, point), bytes);
     });
   }
 
