@@ -61,6 +61,12 @@ async function runCommand(path: string, options: RunCommandOptions): Promise<voi
   const setup = withOptions(file.setup, options);
   const shard = options.shard ?? null;
   const identity = runIdentity(setup, file.text, shard);
+  if (setup.energyGridKeV) {
+    const { runEfficiency } = await import('./efficiency/run-efficiency.js');
+    const warn = (code: string, message: string, count = 1) =>
+      printWarnings([{ code, message, count }], options);
+    return runEfficiency({ path, file, setup, identity, options, warn });
+  }
   if (options.resume && (await endIfFinished(path, identity, options))) return;
 
   const { overwrite = false, resume = false } = options;

@@ -16,6 +16,14 @@ export {
   type SizeRequest,
 } from './sizing.js';
 export { Simulator, type Playlist } from './simulator.js';
+export {
+  curveSeed,
+  curveSetup,
+  simulateEfficiency,
+  type CurveOptions,
+  type CurvePoint,
+  type EfficiencyCurve,
+} from './efficiency-curve.js';
 export { EngineError, type EngineErrorCode } from './errors.js';
 export type * from './setup.js';
 export { MAX_ENERGY_KEV, MAX_LAYERS, MIN_ENERGY_KEV } from './setup.js';

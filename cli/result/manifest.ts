@@ -114,10 +114,23 @@ export interface Manifest {
     /** When the run ended, ISO 8601, UTC. */
     readonly finished: string;
   };
+  /** Of efficiency curves only: the energies that are finished; histories and the like are of all together. */
+  readonly energies?: readonly ManifestEnergy[];
   /** The setup file as it was read; null for a setup made by a program. */
   readonly setup: { readonly text: string; readonly sha256: string } | null;
   /** SHA-256 of the other files of the folder, by name. */
   readonly files: Readonly<Record<string, string>>;
+}
+
+/** One energy of an efficiency curve: its run can be done by itself with this seed. */
+export interface ManifestEnergy {
+  readonly energy_keV: number;
+  readonly seed: string;
+  readonly histories: number;
+  readonly batches: number;
+  readonly stopped: StopReason;
+  readonly balance: Manifest['balance'];
+  readonly warnings: readonly Warning[];
 }
 
 /** What a run does not know about itself. */

@@ -2,6 +2,9 @@
 import { readFileSync } from 'node:fs';
 import { join } from 'node:path';
 import type { DepthRow, QuantityRow, RunResult, Spectrum } from '../../engine/result.js';
+import type { CurveRow } from '../efficiency/curve-rows.js';
+import { decodeCurve, decodeFits } from '../efficiency/curve-tables.js';
+import type { CurveFit } from '../efficiency/fit-curve.js';
 import { errors, ThicksetError } from '../errors.js';
 import {
   makeManifest,
@@ -25,6 +28,9 @@ export const TOTALS_NAME = 'totals.arrow';
 export const SPECTRA_NAME = 'spectra.arrow';
 /** Only of runs with a depth profile. */
 export const DEPTH_NAME = 'depth.arrow';
+/** Only of efficiency curves, which have no spectra. */
+export const EFFICIENCY_NAME = 'efficiency.arrow';
+export const FITS_NAME = 'efficiency_fit.arrow';
 
 /** A result as its folder holds it. */
 export interface StoredResult {
@@ -34,6 +40,8 @@ export interface StoredResult {
   readonly spectra: readonly Spectrum[];
   /** Absent without a depth profile. */
   readonly depth?: readonly DepthRow[];
+  /** Of efficiency curves only. */
+  readonly efficiency?: { readonly rows: readonly CurveRow[]; readonly fits: readonly CurveFit[] };
 }
 
 /** A result with the files it is written as. */
@@ -117,11 +125,13 @@ function readTable<T>(folder: string, name: string, manifest: Manifest, decode: 
 export function readResult(folder: string): StoredResult {
   const manifest = readManifest(folder);
   const hasDepth = manifest.files[DEPTH_NAME] !== undefined;
+  const isCurve = manifest.energies !== undefined;
   return {
     manifest,
     totals: withReliability(readTable(folder, TOTALS_NAME, manifest, decodeTotals), manifest),
-    spectra: readTable(folder, SPECTRA_NAME, manifest, decodeSpectra),
+    spectra: isCurve ? [] : readTable(folder, SPECTRA_NAME, manifest, decodeSpectra),
     ...(hasDepth ? { depth: readTable(folder, DEPTH_NAME, manifest, decodeDepth) } : {}),
+    ...(isCurve ? { efficiency: readCurve(folder, manifest) } : {}),
   };
 }
 
@@ -132,4 +142,11 @@ function withReliability(rows: readonly QuantityRow[], { reliability = [] }: Man
     );
     return found ? { ...row, reliability: { contributing: found.contributing, vov: found.vov } } : row;
   });
+}
+
+function readCurve(folder: string, manifest: Manifest): StoredResult['efficiency'] {
+  return {
+    rows: readTable(folder, EFFICIENCY_NAME, manifest, decodeCurve),
+    fits: readTable(folder, FITS_NAME, manifest, decodeFits),
+  };
 }
