@@ -3,10 +3,15 @@
  * that comes of it flies out freely, through the history loop as it is used in earnest.
  */
 import { describe, expect, it } from 'vitest';
+import { compile } from '../../engine/compile.js';
+import { cellOf } from '../../engine/energy-grid.js';
+import { interact, Site } from '../../engine/physics/interact.js';
 import type { Problem } from '../../engine/problem.js';
+import { seedStream } from '../../engine/random.js';
+import type { Physics } from '../../engine/setup.js';
 import { chiSquareSigmas, expectNear, integrate, SIGMAS } from './goodness.js';
-import { AT_ONCE_PER_CM, firstCollisionEnergyKeV, withCrossSections } from './made-up.js';
-import { figureOf, PLAIN, playSlab, spectrumOf } from './slab-run.js';
+import { AT_ONCE_PER_CM, firstCollisionEnergyKeV, withCrossSections, withOneCollision } from './made-up.js';
+import { ALL, figureOf, PLAIN, playSlab, slabSetup, spectrumOf } from './slab-run.js';
 
 const REST = 510.99895; // m c² in keV, CODATA 2018
 const HISTORIES = 200_000;
@@ -108,5 +113,82 @@ describe.each(ROUTES)('a first collision by $route', ({ change }) => {
     const all = integrate(law, -1, 1, 400);
     const expected = integrate((cosine) => law(cosine) * back(cosine), -1, 1, 4000) / all;
     expectNear('reflected', figureOf(played, 'reflected'), expected);
+  });
+});
+
+/**
+ * Photons that leave one interaction each, by bins of energy, those that go on first and those that come back second, and
+ * the sums of the squares of their numbers.
+ */
+function leavingPhotons(material: string, energyKeV: number, physics: Physics, bins: number) {
+  const setup = slabSetup({ stack: [[material, 1]], energyKeV, physics, seed: '' }, 1);
+  const problem = compile(setup);
+  const site = new Site();
+  seedStream(site.random, `one by one ${material}`, 0);
+  site.localCutoffKeV = physics.cutoffKeV;
+  const cell = cellOf(problem.grid, energyKeV);
+  const sums = new Float64Array(2 * bins);
+  const squares = new Float64Array(2 * bins);
+  const own = new Map<number, number>();
+  const count = (keV: number, cosine: number) => {
+    const bin = Math.min(bins - 1, Math.floor((keV / energyKeV) * bins)) + (cosine > 0 ? 0 : bins);
+    own.set(bin, (own.get(bin) ?? 0) + 1);
+  };
+  for (let i = 0; i < HISTORIES; i++) {
+    own.clear();
+    site.energyKeV = energyKeV;
+    interact(problem, site, problem.slotOfLayer[0], cell);
+    if (site.energyKeV > 0) count(site.energyKeV, 1 - 2 * site.v);
+    const { count: emitted, energyKeV: energies, cosine } = site.secondaries;
+    for (let n = 0; n < emitted; n++) count(energies[n], cosine[n]);
+    for (const [bin, photons] of own) {
+      sums[bin] += photons;
+      squares[bin] += photons * photons;
+    }
+  }
+  return { sums, squares };
+}
+
+describe('the short cuts of the history loop', () => {
+  // The loop has scattering and Doppler broadening written out, and settles most electrons that radiate nothing by itself
+  it.each([
+    { material: 'hydrogen', power: 3 },
+    { material: 'germanium', power: 6 },
+    { material: 'NaI', power: 9 },
+    { material: 'lead', power: 7 },
+    { material: 'lead', power: 10 },
+    { material: 'lead', power: 12 },
+    { material: 'water', power: 14 },
+  ])('give $material at 2^$power keV the photons its interactions have', ({ material, power }) => {
+    const energyKeV = firstCollisionEnergyKeV(power);
+    const physics = { ...ALL, coherent: false };
+    const bins = 256;
+    const played = playSlab(
+      {
+        stack: [[material, 1]],
+        energyKeV,
+        physics,
+        seed: `short cuts ${material} ${power}`,
+        binKeV: energyKeV / bins,
+      },
+      HISTORIES,
+      (problem) => withOneCollision(problem, energyKeV),
+    );
+    expect(figureOf(played, 'uncollided').mean).toBe(0);
+    const [forward, backward] = [spectrumOf(played, 'transmitted'), spectrumOf(played, 'reflected')];
+    const { sums, squares } = leavingPhotons(material, energyKeV, physics, bins);
+    let chiSquare = 0;
+    let compared = 0;
+    sums.forEach((expected, bin) => {
+      if (expected < 30) return;
+      const got = (bin < bins ? forward.mean[bin] : backward.mean[bin - bins]) * HISTORIES;
+      // Both runs have this variance: the sum of squares less that of the mean
+      const variance = squares[bin] - (expected * expected) / HISTORIES;
+      chiSquare += (got - expected) ** 2 / (2 * variance);
+      compared++;
+    });
+    expect(compared).toBeGreaterThan(10);
+    // Standardised χ²: a false alarm above 4 once in 3e4
+    expect((chiSquare - compared) / Math.sqrt(2 * compared)).toBeLessThan(SIGMAS);
   });
 });

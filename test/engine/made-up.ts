@@ -35,6 +35,21 @@ export function withoutLocalCutoffs(problem: Problem): Problem {
   };
 }
 
+/**
+ * A copy of the problem in which a photon of `energyKeV`, which must stand at the start of a cell, collides at once in one
+ * of the ways of the real material, and nothing below that energy collides at all.
+ */
+export function withOneCollision(problem: Problem, energyKeV: number): Problem {
+  const cells = new Float64Array(problem.cells.length);
+  const cell = cellOf(problem.grid, energyKeV);
+  for (let at = cell * CELL_LENGTH; at < cells.length; at += problem.cellCount * CELL_LENGTH) {
+    cells.set(problem.cells.subarray(at, at + CELL_LENGTH), at);
+    cells[at] = AT_ONCE_PER_CM;
+    cells[at + 1] = 0;
+  }
+  return { ...withoutLocalCutoffs(problem), cells };
+}
+
 /** A copy of the problem in which photons are absorbed as they are, and do nothing else. */
 export function withAbsorptionAlone(problem: Problem): Problem {
   const cells = new Float64Array(problem.cells.length);
