@@ -36,10 +36,31 @@ export function setupFromFacts(facts: SetupFacts): Setup {
 /** What differs between two runs, in words. A time limit only says when to pause: it may differ. */
 export function identityChanges(was: RunIdentity, is: RunIdentity): string[] {
   const compared = ({ version, shard, setup }: RunIdentity) => ({
-    ...setup,
-    run: { ...(setup.run as object), timeLimitS: null },
+    ...(withUnits(setup) as object),
+    run: withUnits({ ...(setup.run as object), timeLimitS: null }),
     shard: shard && `${shard.index}/${shard.count}`,
     'version of thickset': version,
   });
   return changesBetween(compared(was), compared(is));
+}
+
+const UNITS: Readonly<Record<string, string>> = {
+  Cm: 'cm',
+  KeV: 'keV',
+  GPerCm3: 'g/cm3',
+  Deg: 'deg',
+  Bq: 'Bq',
+  S: 's',
+};
+const WITH_UNIT = new RegExp(`^(.+?)(${Object.keys(UNITS).join('|')})$`);
+
+/** `thicknessCm: 3` as `thickness: 3 cm`, as it may stand in a setup file. */
+function withUnits(value: unknown): unknown {
+  if (Array.isArray(value)) return value.map(withUnits);
+  if (typeof value !== 'object' || value === null) return value;
+  const entries = Object.entries(value).map(([key, inner]) => {
+    const match = typeof inner === 'number' ? WITH_UNIT.exec(key) : null;
+    return match === null ? [key, withUnits(inner)] : [match[1], `${inner} ${UNITS[match[2]]}`];
+  });
+  return Object.fromEntries(entries) as object;
 }
