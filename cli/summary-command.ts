@@ -5,10 +5,14 @@
 import { existsSync } from 'node:fs';
 import { join } from 'node:path';
 import { Option, type Command } from 'commander';
+import { replaceFile } from './checkpoint/durable-file.js';
 import { JOURNAL_NAME, SHARD_NAME } from './checkpoint/names.js';
 import { parseColumns } from './command-options.js';
 import { errors } from './errors.js';
+import type { Analysis } from './response/analysis.js';
+import { asFolderError } from './result/result-folder.js';
 import { resultObject } from './result/result-json.js';
+import { encodeSpectra } from './result/result-tables.js';
 import { readResult, type StoredResult } from './result/stored-result.js';
 import { prepareWidths } from './text/display-width.js';
 import { makeStyle } from './text/style.js';
@@ -16,6 +20,8 @@ import { summaryLines, type SpectraChoice } from './text/summary-text.js';
 import { describeTerminal } from './text/terminal.js';
 
 interface SummaryOptions {
+  readonly fwhm?: readonly string[];
+  readonly registered?: string;
   readonly json?: boolean;
   readonly spectra: SpectraChoice;
   readonly width?: number;
@@ -36,6 +42,12 @@ export function registerSummaryCommand(program: Command): void {
         .choices(['main', 'all', 'none'])
         .default('main'),
     )
+    .option(
+      '--fwhm <[layer=]width>',
+      'width of the peaks instead of that of the setup, as in "7 % at 661.7 keV"; none: as tallied; may be repeated',
+      (text: string, before: readonly string[] = []) => [...before, text],
+    )
+    .option('--registered <file>', 'write the spectra that the detectors register to this file (Arrow)')
     .option('--width <columns>', 'width of the text; default: that of the terminal', parseColumns)
     .option('--json', 'print one JSON object instead')
     .action(summaryCommand);
@@ -47,7 +59,29 @@ async function summaryCommand(folder: string, options: SummaryOptions): Promise<
     return printSweep(viewSweep(folder), folder, options);
   }
   if (existsSync(join(folder, SHARD_NAME))) throw errors.isShard(folder);
-  await printResult(readResult(folder), folder, options);
+  const result = readResult(folder);
+  const analysis = await analysisOf(result, options.fwhm);
+  if (options.registered !== undefined) writeRegistered(options.registered, analysis);
+  await print(result, folder, options, analysis);
+}
+
+/** Only runs with detectors have anything to analyse, and only then is it loaded what does it. */
+async function analysisOf(result: StoredResult, widths?: readonly string[]): Promise<Analysis | null> {
+  const { stack, energies } = result.manifest;
+  const detectors = energies === undefined && stack.some(({ detector }) => detector);
+  if (!detectors && widths === undefined) return null;
+  const choice = widths && (await import('./response/width-option.js')).readWidths(widths, stack);
+  return (await import('./response/analysis.js')).analyse(result, choice);
+}
+
+function writeRegistered(path: string, analysis: Analysis | null): void {
+  if (analysis === null) throw errors.usage('--registered: the run has no detector');
+  if (existsSync(path)) throw errors.usage(`--registered: ${path} exists already`, 'name another file');
+  try {
+    replaceFile(path, encodeSpectra(analysis.responses.map(({ spectrum }) => spectrum)));
+  } catch (cause) {
+    throw asFolderError(path, cause);
+  }
 }
 
 /** Prints a result to stdout, as text or as one JSON object. */
@@ -56,12 +90,21 @@ export async function printResult(
   out: string | null,
   options: SummaryOptions,
 ): Promise<void> {
+  await print(result, out, options, await analysisOf(result));
+}
+
+async function print(
+  result: StoredResult,
+  out: string | null,
+  options: SummaryOptions,
+  analysis: Analysis | null,
+): Promise<void> {
   if (options.json) {
-    process.stdout.write(`${JSON.stringify(resultObject(result, out), null, 2)}\n`);
+    process.stdout.write(`${JSON.stringify(resultObject(result, out, analysis), null, 2)}\n`);
     return;
   }
   const style = makeStyle(describeTerminal(process.stdout), options.width);
   const { title, stack } = result.manifest;
   await prepareWidths([title, ...stack.map(({ name }) => name)]);
-  process.stdout.write(`${summaryLines(result, style, options.spectra).join('\n')}\n`);
+  process.stdout.write(`${summaryLines(result, style, options.spectra, analysis).join('\n')}\n`);
 }

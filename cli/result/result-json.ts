@@ -1,6 +1,9 @@
 /** A result as the one object that `--json` prints; the rows of `totals` have the columns of totals.arrow. */
 import type { QuantityRow } from '../../engine/result.js';
 import { doseRates } from '../dose-rates.js';
+import { curveJson } from '../efficiency/curve-json.js';
+import type { Analysis } from '../response/analysis.js';
+import { peaksJson, ratesJson, responseJson } from '../response/response-json.js';
 import { flawOf, watchedRow } from '../text/convergence.js';
 import { relativeError } from '../text/figure-format.js';
 import type { Manifest } from './manifest.js';
@@ -26,8 +29,9 @@ function precisionOf(
 
 /** The object for a result; `out` is its folder, null when nothing could be written. */
 export function resultObject(
-  { manifest, totals }: StoredResult,
+  { manifest, totals, efficiency }: StoredResult,
   out: string | null,
+  analysis: Analysis | null = null,
 ): Record<string, unknown> {
   const watched = manifest.run.until && watchedRow(totals, manifest.run.until);
   const flawed = totals.flatMap((row) => {
@@ -42,6 +46,7 @@ export function resultObject(
     ...facts,
     setup_sha256: manifest.setup?.sha256 ?? null,
     totals: totals.map(totalsRow),
+    ...(efficiency ? curveJson(efficiency) : {}),
     dose_rates: doseRates(totals, manifest.source).map(({ row, mean, stdError, unit }) => ({
       quantity: row.quantity,
       layer: row.layer,
@@ -49,6 +54,9 @@ export function resultObject(
       std_error: stdError,
       unit,
     })),
+    rates: ratesJson(totals, manifest.source),
+    response: analysis === null ? [] : responseJson(analysis, manifest.source),
+    peaks: analysis === null ? [] : peaksJson(analysis),
     precision: totals.flatMap((row) => precisionOf(row, manifest)),
     not_converged: flawed,
   };

@@ -119,25 +119,27 @@ const windowSchema = z.strictObject({
   to: quantity('energy', { moreThan: 0, atMost: 20_000 }, { description: 'Upper edge.' }),
 });
 
+/** A width at an energy, a formula or a table. */
+export const fwhmSchema = z
+  .union([
+    field(
+      {
+        type: 'string',
+        description: 'Width at one energy; it grows with the square root of the energy.',
+        examples: ['7 % at 661.7 keV', '1.8 keV at 1332.5 keV'],
+      },
+      readWidthAtEnergy,
+    ),
+    formulaSchema,
+    list(widthRowSchema, 2, 1000, { description: 'Widths at several energies.' }),
+  ])
+  .meta({
+    description: 'Full width at half maximum of a peak; without it the spectrum is not broadened.',
+  });
+
 const detectorSchema = z
   .strictObject({
-    fwhm: z
-      .union([
-        field(
-          {
-            type: 'string',
-            description: 'Width at one energy; it grows with the square root of the energy.',
-            examples: ['7 % at 661.7 keV', '1.8 keV at 1332.5 keV'],
-          },
-          readWidthAtEnergy,
-        ),
-        formulaSchema,
-        list(widthRowSchema, 2, 1000, { description: 'Widths at several energies.' }),
-      ])
-      .meta({
-        description: 'Full width at half maximum of a peak; without it the spectrum is not broadened.',
-      })
-      .optional(),
+    fwhm: fwhmSchema.optional(),
     threshold: quantity(
       'energy',
       { atLeast: 0, atMost: 20_000 },

@@ -148,7 +148,7 @@ function makeDetector(keys: DetectorKeys, path: Path, problems: ProblemList): De
 }
 
 /** Null if something in it is wrong, and has been reported. */
-function makeResolution(
+export function makeResolution(
   keys: NonNullable<DetectorKeys['fwhm']>,
   path: Path,
   problems: ProblemList,

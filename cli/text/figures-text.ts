@@ -18,7 +18,7 @@ import type { Style } from './style.js';
 import { alignFigures, alignRight, renderTable } from './text-table.js';
 
 /** What figures can be given per; `factor` turns a figure per photon into it. */
-interface Scale {
+export interface Scale {
   readonly title: string;
   readonly factor: number;
 }
@@ -32,7 +32,8 @@ export const MARKS: Readonly<Record<Flaw, string>> = {
   short_of_until: '!',
 };
 
-function scalesOf({ source }: Manifest): Scale[] {
+/** Per photon first, then what the source makes of it. */
+export function scalesOf({ source }: Manifest): Scale[] {
   const scales = [PER_PHOTON];
   const photonsPerDecay = source.photons_per_decay ?? 1;
   if (source.photons_per_decay !== null) {

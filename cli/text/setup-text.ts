@@ -44,6 +44,16 @@ function describeEnergies({ lines, continuum, photons_per_decay: perDecay }: Man
     .join(', ');
 }
 
+function describeEmission(source: ManifestSource): string {
+  return `${source.nuclide === null ? '' : `${clip(source.nuclide)}: `}${describeEnergies(source)}`;
+}
+
+/** Of an efficiency curve. */
+function describeSeries({ lines }: ManifestSource): string {
+  const [from, to] = [lines[0], lines[lines.length - 1]].map((line) => formatNumber(line.energy_keV, 6));
+  return `${lines.length} energies from ${from} to ${to} keV, one after the other`;
+}
+
 function describeLayer(layer: ManifestLayer): string[] {
   const density = layer.density_g_per_cm3;
   return [
@@ -68,11 +78,14 @@ function describeExtent(extent: Manifest['extent']): string[][] {
 }
 
 /** Lines under "What went in", none wider than `width` save those of layers with long names. */
-export function describeSetup({ source, stack, extent, physics }: Manifest, width: number): string[] {
+export function describeSetup(
+  { source, stack, extent, physics, energies }: Manifest,
+  width: number,
+): string[] {
   const off = Object.keys(physics).filter((name) => physics[name] === false);
   const facts: string[][] = [
     ['source', describeShape(source)],
-    ['emits', `${source.nuclide === null ? '' : `${clip(source.nuclide)}: `}${describeEnergies(source)}`],
+    ['emits', energies === undefined ? describeEmission(source) : describeSeries(source)],
   ];
   if (source.activity_Bq !== null) {
     const time = source.live_time_s === null ? '' : `, counted for ${formatDuration(source.live_time_s)}`;

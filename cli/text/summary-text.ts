@@ -1,16 +1,19 @@
 /** A finished run on one screen: what went in, the figures with their errors, the spectra, what to be careful of. */
 import type { Spectrum, SpectrumTally, StopReason } from '../../engine/result.js';
+import type { Analysis } from '../response/analysis.js';
 import type { Manifest } from '../result/manifest.js';
 import type { StoredResult } from '../result/stored-result.js';
 import { clip } from '../show.js';
 import { LEAST_CONTRIBUTING, VOV_LIMIT } from '../../engine/reliability-verdict.js';
 import { CAUTION } from './caution.js';
 import { CONVERGED_BELOW, type Flaw } from './convergence.js';
+import { curveSections } from './curve-text.js';
 import { doseRateLines } from './dose-text.js';
 import { displayWidth } from './display-width.js';
 import { figuresText, flawsIn, MARKS } from './figures-text.js';
 import { formatCount, formatDuration, formatNumber } from './figure-format.js';
 import { GROUPS, type Group } from './quantities.js';
+import { isShaped, peakLines, responseLines } from './response-text.js';
 import { describeSetup } from './setup-text.js';
 import { plotSpectrum } from './spectrum-plot.js';
 import type { Style } from './style.js';
@@ -45,6 +48,10 @@ function head({ title, histories, seed, stopped, timings }: Manifest, style: Sty
       `${formatDuration(timings.wall_s)}, ${formatCount(timings.histories_per_second)} histories per second`,
     ),
   ];
+}
+
+function curveIntroduction({ manifest }: StoredResult, style: Style): string[] {
+  return ['', style.heading(GROUPS.in), ...describeSetup(manifest, style.width)];
 }
 
 /** The titles of the columns stand beside the heading where there is room, else under it. */
@@ -90,10 +97,11 @@ function legend(result: StoredResult, style: Style): string[] {
   return lines.length === 0 ? [] : ['', ...lines.map(style.alert)];
 }
 
-function spectrumLines(spectrum: Spectrum, style: Style): string[] {
+function spectrumLines(spectrum: Spectrum, style: Style, registered = false): string[] {
   const { lines, logarithmic } = plotSpectrum(spectrum, style);
   const where = spectrum.layer === null ? '' : `, ${clip(spectrum.layer)}`;
-  const name = `${SPECTRUM_TITLES[spectrum.tally] ?? clip(spectrum.tally)}${where}`;
+  const how = registered ? ' as registered' : '';
+  const name = `${SPECTRUM_TITLES[spectrum.tally] ?? clip(spectrum.tally)}${how}${where}`;
   if (lines.length === 0) {
     return ['', `${style.heading(name)} ${style.note('(none)')}`];
   }
@@ -102,12 +110,24 @@ function spectrumLines(spectrum: Spectrum, style: Style): string[] {
   return ['', `${style.heading(name)} ${caption}`, ...lines.map(style.drawing)];
 }
 
-function spectraSections(spectra: readonly Spectrum[], choice: SpectraChoice, style: Style): string[] {
+/** Spectra that detectors shape are drawn as registered; as tallied too where every one is asked for. */
+function spectraSections(
+  spectra: readonly Spectrum[],
+  analysis: Analysis | null,
+  choice: SpectraChoice,
+  style: Style,
+): string[] {
+  const shaped = (analysis?.responses ?? []).filter(isShaped);
   const drawn = spectra.filter(
     ({ tally, mean }) =>
       choice === 'all' || (choice === 'main' && tally !== 'deposited' && mean.some((value) => value > 0)),
   );
-  return drawn.flatMap((spectrum) => spectrumLines(spectrum, style));
+  return drawn.flatMap((spectrum) => {
+    const response = shaped.find(({ tallied }) => tallied === spectrum);
+    if (response === undefined) return spectrumLines(spectrum, style);
+    const tallied = choice === 'all' ? spectrumLines(spectrum, style) : [];
+    return [...tallied, ...spectrumLines(response.spectrum, style, true)];
+  });
 }
 
 function warningLines({ warnings }: Manifest, style: Style): string[] {
@@ -125,16 +145,24 @@ function warningLines({ warnings }: Manifest, style: Style): string[] {
 }
 
 /** The lines of the summary, none wider than the style's width save for long names. */
-export function summaryLines(result: StoredResult, style: Style, spectra: SpectraChoice): string[] {
+export function summaryLines(
+  result: StoredResult,
+  style: Style,
+  spectra: SpectraChoice,
+  analysis: Analysis | null = null,
+): string[] {
   const { manifest } = result;
   const energyGap = formatNumber(manifest.balance.relative_error, 2);
   const gapError = manifest.balance.relative_std_error;
   const ofError = gapError === undefined ? '' : ` (standard error ${formatNumber(gapError, 2)})`;
+  const isCurve = result.efficiency !== undefined;
   return [
     ...head(manifest, style),
-    ...figureSections(result, style),
-    ...legend(result, style),
-    ...spectraSections(result.spectra, spectra, style),
+    ...(isCurve ? curveIntroduction(result, style) : figureSections(result, style)),
+    ...(isCurve ? curveSections(result, style) : legend(result, style)),
+    ...(analysis === null ? [] : responseLines(analysis, manifest, style)),
+    ...(analysis === null ? [] : peakLines(analysis, style)),
+    ...spectraSections(result.spectra, analysis, spectra, style),
     ...warningLines(manifest, style),
     '',
     ...wrap(`Energy in and energy accounted for differ by ${energyGap} of the whole${ofError}.`, style.width),
