@@ -222,7 +222,7 @@ export function asFolderError(folder: string, cause: unknown): ThicksetError {
     return cause;
   }
   const code = (cause as NodeJS.ErrnoException).code;
-  return code === 'ENOSPC' || code === 'EDQUOT'
+  return code === 'ENOSPC' || code === 'EDQUOT' || code === 'EFBIG'
     ? errors.diskFull(folder, cause)
     : errors.outputNotWritable(folder, cause);
 }

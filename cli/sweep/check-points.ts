@@ -25,7 +25,7 @@ export function checkPoints(sweep: Sweep, problems: ProblemList): Warning[] {
   reportSamePoints(sweep, problems);
   for (let point = 0; point < sweep.points && found.size < MOST_PROBLEMS; point++) {
     for (const problem of problemsOf(sweep, point, warnings)) {
-      const place = varyPlace(sweep, point, problem.path);
+      const place = varyPlace(sweep, point, problem);
       const key = JSON.stringify([place, problem.path, problem.rule, problem.got]);
       const known = found.get(key);
       if (known) known.points.push(point);
@@ -37,7 +37,8 @@ export function checkPoints(sweep: Sweep, problems: ProblemList): Warning[] {
     const everywhere = points.length === sweep.points;
     const where = place !== null || everywhere ? '' : ` (in ${pointWords(points)})`;
     const complaint = new Complaint(problem.code, `${problem.rule}${where}`, problem.wayOut);
-    if (place !== null) problems.add(place, complaint, problem.got ?? undefined);
+    if (place !== null && problem.code === 'unknown_key') problems.addKey(place, complaint);
+    else if (place !== null) problems.add(place, complaint, problem.got ?? undefined);
     else base.problems.add([...base.prefix, ...problem.path], complaint, problem.got ?? undefined);
   }
   throwTogether(problems, base.problems);
@@ -73,10 +74,13 @@ function* forbidden({ energyGridKeV }: Setup): Generator<Problem> {
 }
 
 /** Where the value that a problem is about stands in the sweep file; null where it does not come from there. */
-function varyPlace(sweep: Sweep, point: number, path: Path): Path | null {
+function varyPlace(sweep: Sweep, point: number, { code, path }: Problem): Path | null {
   const indices = sweep.indicesOf(point);
   const at = sweep.parameters.findIndex((parameter) => parameter.path.every((step, i) => path[i] === step));
-  if (at >= 0) return sweep.parameters[at].placeOf(indices[at]);
+  if (at >= 0) {
+    const { name, path: own, placeOf } = sweep.parameters[at];
+    return code === 'unknown_key' && own.length === path.length ? ['vary', name] : placeOf(indices[at]);
+  }
   const fromPrecision = path[0] === 'run' && path[1] === 'until' && sweep.precision?.quantity;
   return fromPrecision ? ['precision', ...path.slice(2)] : null;
 }

@@ -16,7 +16,11 @@ export interface PointInRound {
 
 /** An error of few batches is a rough guess: no point grows by more than this factor in a round. */
 const MOST_GROWTH = 4;
-const BISECTIONS = 40;
+/** Share of a round for points that have seen nothing while others have. */
+const BLIND_SHARE = 0.5;
+/** No Monte Carlo figure gets more precise than this. */
+const LEAST_ERROR = 1e-9;
+const BISECTIONS = 60;
 
 /**
  * The batches each point should have after the round; points that get none are left out.
@@ -27,38 +31,61 @@ const BISECTIONS = 40;
 export function planRound(points: readonly PointInRound[], budgetS: number): Map<number, number> {
   const fresh = points.filter(({ batches }) => batches === 0);
   if (fresh.length > 0) return new Map(fresh.map(({ point }) => [point, 1]));
+  const seen = points.filter(({ relativeError }) => relativeError < Infinity);
+  const blind = doubled(
+    points.filter(({ relativeError }) => relativeError === Infinity),
+    seen.length > 0 ? BLIND_SHARE * budgetS : budgetS,
+  );
+  const round = [...blind, ...levelled(seen, budgetS - costOf(blind))];
+  const chosen = round.length > 0 ? round : [least(points)];
+  return new Map(chosen.map(([{ point }, batches]) => [point, batches]));
+}
+
+/** A point with the batches it should have. */
+type Target = readonly [PointInRound, number];
+
+function costOf(targets: readonly Target[]): number {
+  return targets.reduce(
+    (sum, [{ batches, secondsPerBatch }, aim]) => sum + (aim - batches) * secondsPerBatch,
+    0,
+  );
+}
+
+/** Points that have seen nothing yet are doubled, the cheapest first: some will never see anything. */
+function doubled(points: readonly PointInRound[], budgetS: number): Target[] {
+  const targets = points
+    .map((entry): Target => [entry, Math.min(entry.batchesPlanned, 2 * entry.batches)])
+    .sort((a, b) => costOf([a]) - costOf([b]));
+  let spentS = 0;
+  return targets.filter((target) => (spentS += costOf([target])) <= budgetS);
+}
+
+/** Brings the least precise points down to one error, by bisection over its logarithm. */
+function levelled(points: readonly PointInRound[], budgetS: number): Target[] {
   const targets = (error: number) =>
-    points.flatMap((entry) => {
+    points.flatMap((entry): Target[] => {
       const batches = batchesFor(entry, error);
-      return batches > entry.batches ? [[entry, batches] as const] : [];
+      return batches > entry.batches ? [[entry, batches]] : [];
     });
-  const costS = (error: number) =>
-    targets(error).reduce(
-      (sum, [entry, batches]) => sum + (batches - entry.batches) * entry.secondsPerBatch,
-      0,
-    );
-  const errors = points.map(({ relativeError }) => relativeError).filter(Number.isFinite);
-  // The bisection runs over the logarithm of the error; the upper end costs least.
-  let [low, high] = [-20, Math.log(Math.max(1e-6, ...errors))];
+  const largest = Math.max(...points.map(({ relativeError }) => relativeError), LEAST_ERROR);
+  let [low, high] = [Math.log(LEAST_ERROR), Math.log(largest)];
   for (let i = 0; i < BISECTIONS; i++) {
     const middle = (low + high) / 2;
-    if (costS(Math.exp(middle)) > budgetS) low = middle;
+    if (costOf(targets(Math.exp(middle))) > budgetS) low = middle;
     else high = middle;
   }
-  const chosen = targets(Math.exp(high));
-  const round = chosen.length > 0 ? chosen : [least(points)];
-  return new Map(round.map(([{ point }, batches]) => [point, batches]));
+  return targets(Math.exp(high));
 }
 
 /** Batches for a point to reach an error, within what it may grow in one round. */
 function batchesFor({ batches, batchesPlanned, relativeError }: PointInRound, error: number): number {
-  const wanted = relativeError === Infinity ? 2 * batches : batches * (relativeError / error) ** 2;
   // Rounded down: a point that needs less than a batch more is good enough.
-  return Math.min(batchesPlanned, MOST_GROWTH * batches, Math.floor(wanted));
+  const wanted = Math.floor(batches * (relativeError / error) ** 2);
+  return Math.min(batchesPlanned, MOST_GROWTH * batches, wanted);
 }
 
 /** One more batch for the least precise point, so that every round gets on. */
-function least(points: readonly PointInRound[]): readonly [PointInRound, number] {
+function least(points: readonly PointInRound[]): Target {
   const worst = points.reduce((a, b) => (b.relativeError > a.relativeError ? b : a));
   return [worst, worst.batches + 1];
 }

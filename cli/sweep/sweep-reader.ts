@@ -42,12 +42,8 @@ function makeSweep(path: string, raw: unknown, problems: ProblemList): Omit<Swee
   const base = keys.base === undefined ? null : readBase(keys.base, path, problems);
   const seed = keys.seed ?? seedOf(base) ?? DEFAULTS.seed;
   const combine = combinationOf(keys, problems);
-  const parameters = makeParameters(
-    keys.vary ?? {},
-    base?.raw,
-    { combine, samples: keys.samples ?? 0, seed },
-    problems,
-  );
+  const sampling = { combine, samples: keys.samples ?? 0, seed };
+  const parameters = keys.vary === undefined ? [] : makeParameters(keys.vary, base?.raw, sampling, problems);
   const points = parameters.length === 0 ? 0 : countPoints(parameters, combine, problems);
   problems.throwIfAny();
   const sweep = new Sweep({
