@@ -140,7 +140,7 @@ class Meter {
 
   /** Seen from the run a task of which came back. */
   progress(run: Run): Progress {
-    if (!run.isOver) this.underWay.add(run);
+    this.underWay.add(run);
     const each = this.setup.run.histories;
     const inHand = [...this.underWay].reduce((sum, under) => sum + under.histories, 0);
     const histories = Math.min(this.done * each + inHand, this.energies * each);
