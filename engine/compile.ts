@@ -9,6 +9,7 @@ import { sharedDoubles, type Problem } from './problem.js';
 import type { Physics, Setup } from './setup.js';
 import { hasEdges, makeSolidProblem } from './solid-source.js';
 import { makeTallyLayout } from './tally-layout.js';
+import { uncollidedConstants } from './uncollided.js';
 
 /** Compiles a checked setup. */
 export function compile(setup: Setup): Problem {
@@ -39,10 +40,15 @@ export function compile(setup: Setup): Problem {
     plain: isPlain(physics, topKeV),
     solid,
     doseLines: makeDoseLines(tables.grid, setup.tally.dose),
+    faceDose: null,
     deep: null,
     tally: makeTallyLayout(setup, deep),
   };
-  return deep ? { ...problem, deep: makeDeepProblem(setup, problem) } : problem;
+  if (deep) return { ...problem, deep: makeDeepProblem(setup, problem) };
+  const scoresDose = solid === null && setup.tally.dose.length > 0;
+  return scoresDose
+    ? { ...problem, faceDose: uncollidedConstants(problem, setup.tally.dosePoints) }
+    : problem;
 }
 
 /** Whether nothing but absorption and incoherent scattering can happen, without secondaries or broadening. */

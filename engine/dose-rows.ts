@@ -37,7 +37,19 @@ export function doseRows(run: RunFigures): QuantityRow[] {
     ...setup.tally.dosePoints.flatMap((point, p) => pointRows(run, quantity, d, point, p)),
     ...faceRows(run, quantity, d),
   ]);
-  return run.layout.weighted ? rows : rows.map((row) => ({ ...row, mean: null, stdError: null }));
+  if (run.layout.weighted) return rows;
+  // Analog transport scores at the faces of endless layers alone.
+  const isScored = (row: QuantityRow) => !hasSides(setup) && row.layer === null;
+  return rows.map((row) => (isScored(row) ? row : unknown(row)));
+}
+
+function unknown({ quantity, layer, lineKeV, unit }: QuantityRow): QuantityRow {
+  return { quantity, layer, lineKeV, mean: null, stdError: null, unit };
+}
+
+/** Whether the stack has lateral surfaces. */
+function hasSides({ stack, extent }: Setup): boolean {
+  return extent !== null || stack.some((layer) => layer.radiusCm !== null);
 }
 
 function pointRows(

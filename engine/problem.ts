@@ -10,6 +10,7 @@ import type { EmissionTable } from './emission.js';
 import type { TallyLayout } from './tally-layout.js';
 import type { SourceShape } from './setup.js';
 import type { DeepProblem } from './deep-choice.js';
+import type { Constants } from './uncollided.js';
 import type { SolidProblem } from './solid-source.js';
 
 /**
@@ -84,6 +85,8 @@ export interface Problem {
 
   /** Dose per fluence; see dose-lines.ts. */
   readonly doseLines: Float64Array;
+  /** Uncollided dose at the faces of an endless stack in analog transport; null where none is asked for. */
+  readonly faceDose: Constants | null;
   /** What steers deep transport; null in analog. */
   readonly deep: DeepProblem | null;
 

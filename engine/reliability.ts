@@ -15,8 +15,8 @@ export function reliabilityOf(
   figure: number,
   histories: number,
 ): Reliability | null {
-  const place = layout.weighted ? layout.dose.leading.indexOf(figure) : -1;
-  if (place < 0) return null;
+  const place = layout.dose.leading.indexOf(figure);
+  if (place < 0 || !(layout.weighted || figure >= layout.dose.farFigure)) return null;
   const at = layout.dose.momentFigure + MOMENT_PLACES * place;
   const contributing = sums.figureSum[at];
   const vov = varianceOfVariance(histories, {

@@ -41,8 +41,10 @@ const FIRST_HISTORIES = 20_000;
 const MAX_HISTORIES = 2e8;
 /** Relative error of a dose that leads the way. */
 const ROUGH_ERROR = 0.05;
-/** Standard error of the thickness that is aimed at, as a share of it. */
-const THICKNESS_ERROR = 0.002;
+/** Standard error of the thickness that is aimed at by default, as a share of it: its 95 % interval is 1.6 % wide. */
+const THICKNESS_ERROR = 0.004;
+/** A dose below this share of its limit need not be known well. */
+const FAR_BELOW = 0.3;
 const LEAST_ERROR = 0.001;
 /** The last run is this close in ln dose: what the slope is wrong by then makes no difference. */
 const CLOSE = 0.1;
@@ -65,6 +67,7 @@ export class ThicknessSearch {
     private readonly goals: readonly SizeGoal[],
     private readonly play: PlaySetup,
     private readonly seed: string,
+    private readonly thicknessError = THICKNESS_ERROR,
   ) {
     this.leastPerCm = leastAttenuation(setup, layer);
   }
@@ -80,7 +83,7 @@ export class ThicknessSearch {
     for (;;) {
       const trial = await this.runOnce(thicknessCm, histories, seed);
       const error = trial.excess.stdError;
-      const isEnough = error <= relativeError && trial.states.every(({ isReliable }) => isReliable);
+      const isEnough = error <= relativeError && trial.states.every(isSettled);
       if (isEnough || histories >= MAX_HISTORIES || !Number.isFinite(trial.excess.log)) return trial;
       const wanted = Math.max(2, 1.2 * (error / relativeError) ** 2);
       histories = Math.ceil(Math.min(MAX_HISTORIES, histories * Math.min(wanted, 100)));
@@ -127,7 +130,7 @@ export class ThicknessSearch {
 
   /** Relative error of the dose that brings the thickness to the error aimed at. */
   private errorFor({ thicknessCm }: Pick<Trial, 'thicknessCm'>, perCm: number): number {
-    return Math.max(LEAST_ERROR, Math.min(ROUGH_ERROR, THICKNESS_ERROR * thicknessCm * perCm));
+    return Math.max(LEAST_ERROR, Math.min(ROUGH_ERROR, this.thicknessError * thicknessCm * perCm));
   }
 
   /** Fall of ln dose per cm near a trial: to the trial nearest in thickness, else a guess from the attenuation. */
@@ -174,6 +177,11 @@ export class ThicknessSearch {
         trial.excess.log - last.excess.log < PLATEAU_FALL + 2 * last.excess.stdError,
     );
   }
+}
+
+/** A dose near its limit must be reliable, with all its histories. */
+export function isSettled({ value, goal, isReliable }: GoalState): boolean {
+  return isReliable || (value !== null && value < FAR_BELOW * goal.limit);
 }
 
 /** Least attenuation coefficient of a layer at any energy up to the highest of the source. */

@@ -5,7 +5,7 @@
 import { EngineError } from './errors.js';
 import type { Setup } from './setup.js';
 import type { GoalState, SizeGoal } from './sizing-goal.js';
-import { ThicknessSearch, type Found, type PlaySetup, type Trial } from './sizing-search.js';
+import { isSettled, ThicknessSearch, type Found, type PlaySetup, type Trial } from './sizing-search.js';
 
 export interface SizeRequest {
   readonly layer: string;
@@ -37,6 +37,8 @@ export interface SizeAnswer {
 /** Normal quantile of a two-sided interval of 95 %. */
 const TWO_SIDED_95 = 1.96;
 const MAX_CONFIRMATIONS = 12;
+/** Standard error of the thicknesses of a trade-off, as a share of them. */
+const PAIR_ERROR = 0.01;
 /** Standard errors that a confirmation should have between value and limit. */
 const MARGIN_SIGMAS = 3;
 const ERROR_RANGE = [0.001, 0.01] as const;
@@ -87,7 +89,7 @@ async function confirm(
     const [least, most] = ERROR_RANGE;
     const error = Math.max(least, Math.min(most, margin / MARGIN_SIGMAS));
     const trial = await search.run(thicknessCm, error, `${seed}/confirm/${confirmations.length}`);
-    const isMet = trial.states.every((state) => state.isReliable && state.upper95 <= state.goal.limit);
+    const isMet = trial.states.every((state) => isSettled(state) && state.upper95 <= state.goal.limit);
     const { states, histories } = trial;
     confirmations.push({ thicknessCm, states, seed: trial.seed, histories, isMet });
     if (isMet) break;
@@ -116,7 +118,7 @@ export async function tradeOff(
   for (const [n, otherCm] of thicknessesCm.entries()) {
     const changed = withThickness(setup, other, otherCm);
     const seed = `${setup.seed}/trade-off/${n}`;
-    const search = new ThicknessSearch(changed, request.layer, request.goals, play, seed);
+    const search = new ThicknessSearch(changed, request.layer, request.goals, play, seed, PAIR_ERROR);
     pairs.push({ otherCm, found: await search.find() });
   }
   return pairs;

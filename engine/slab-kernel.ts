@@ -6,6 +6,7 @@
  * as the work around it (measured: through `interact` plain physics loses a quarter of its speed, all physics half).
  * What is rarer is played by the functions of interact.ts. A test holds this loop against them.
  */
+import { AnalogDose } from './analog-dose.js';
 import { BUCKET_OFFSET, BUCKET_SHIFT } from './energy-grid.js';
 import { MAX_TOUCHED, type BatchTally } from './batch-tally.js';
 import { scoreCoincidences } from './coincidence.js';
@@ -70,6 +71,7 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
   const { cellSum, cellSquare, figureSum, figureSquare, pending, touched } = tally;
   const { random, secondaries } = site;
   const deposited = new Float64Array(layers);
+  const faceDose = problem.faceDose === null ? null : new AnalogDose(problem, tally);
   const start: SlabStart = { z: 0, w: 1, layer: 0 };
   const onlyKeV = emission.lowKeV[0];
   const fixedStart =
@@ -397,6 +399,7 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
         }
         pending[bin]++;
         touched[touchedCount++] = bin;
+        if (faceDose !== null) faceDose.leave(event === LEFT_FAR, energyKeV, cell, w);
       }
       if (touchedCount === MAX_TOUCHED) throw new Error(TOO_MANY_SCORES);
 
@@ -426,6 +429,7 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
       figureSum[FIGURE.reflectedEnergy] += reflectedKeV;
       figureSquare[FIGURE.reflectedEnergy] += reflectedKeV * reflectedKeV;
     }
+    if (faceDose !== null) faceDose.closeHistory();
     if (coincidence !== null) scoreCoincidences(tally, deposited, sourceKeV, line, 1);
     for (let l = 0; l < layers; l++) {
       let pulseKeV = deposited[l];
@@ -473,6 +477,7 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
   for (let figure = interactingFigure; figure < tally.layout.figures; figure++) {
     figureSquare[figure] = figureSum[figure];
   }
+  if (faceDose !== null) faceDose.closeBatch(histories);
   random[0] = s0;
   random[1] = s1;
   random[2] = s2;
