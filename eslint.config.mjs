@@ -7,12 +7,17 @@ export default tseslint.config(
   ...tseslint.configs.recommended,
   {
     files: ['**/*.mjs'],
-    languageOptions: { globals: { process: 'readonly', console: 'readonly', URL: 'readonly', performance: 'readonly' } },
+    languageOptions: {
+      globals: { process: 'readonly', console: 'readonly', URL: 'readonly', performance: 'readonly' },
+    },
   },
   {
     rules: {
       '@typescript-eslint/no-explicit-any': 'error',
-      'no-restricted-syntax': ['error', { selector: 'ExportDefaultDeclaration', message: 'Named exports only.' }],
+      'no-restricted-syntax': [
+        'error',
+        { selector: 'ExportDefaultDeclaration', message: 'Named exports only.' },
+      ],
     },
   },
   // Imports run one way: materials and geometry know nobody, the engine knows them, the cli knows all.
@@ -22,11 +27,15 @@ export default tseslint.config(
   },
   {
     files: ['materials/**/*.ts'],
-    rules: { 'no-restricted-imports': ['error', { patterns: ['**/engine/**', '**/cli/**', '**/geometry/**'] }] },
+    rules: {
+      'no-restricted-imports': ['error', { patterns: ['**/engine/**', '**/cli/**', '**/geometry/**'] }],
+    },
   },
   {
     files: ['geometry/**/*.ts'],
-    rules: { 'no-restricted-imports': ['error', { patterns: ['**/engine/**', '**/cli/**', '**/materials/**'] }] },
+    rules: {
+      'no-restricted-imports': ['error', { patterns: ['**/engine/**', '**/cli/**', '**/materials/**'] }],
+    },
   },
   {
     files: ['engine/**/*.ts'],

@@ -45,7 +45,8 @@ function isLeftOver(folder: string, system: FileSystem): boolean {
 }
 
 /** States of a run, and the data files it may have been killed while putting in place. */
-const UNFINISHED = /^(checkpoint(-previous)?\.bin|shard\.bin|(totals|spectra|depth|efficiency|efficiency_fit)\.arrow)$/;
+const UNFINISHED =
+  /^(checkpoint(-previous)?\.bin|shard\.bin|(totals|spectra|depth|efficiency|efficiency_fit)\.arrow)$/;
 
 function isOurs(folder: string, system: FileSystem): boolean {
   const entries = system.readdirSync(folder).filter((name) => !isPassing(name));

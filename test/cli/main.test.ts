@@ -304,16 +304,22 @@ test('a summary of nothing ends with 4', async () => {
   expect(await thickset('summary', 'nowhere')).toEqual({
     code: 4,
     stdout: '',
-    stderr: 'nowhere/manifest.json: no results here; name a folder written by thickset run or thickset sweep\n',
+    stderr:
+      'nowhere/manifest.json: no results here; name a folder written by thickset run or thickset sweep\n',
   });
 });
 
-test.runIf(existsSync('/proc/version'))('a folder that cannot be made ends with 4 before the run', async () => {
-  // Nobody can make folders in /proc, whatever its permissions say.
-  const { code, stdout, stderr } = await thickset('run', 'setup.yaml', '--out', '/proc/thickset', '--json');
-  expect({ code, stdout }).toEqual({ code: 4, stdout: '' });
-  expect(stderr).toMatch(/^\/proc\/thickset: cannot be written \(.*\); choose another folder with --out\n$/);
-});
+test.runIf(existsSync('/proc/version'))(
+  'a folder that cannot be made ends with 4 before the run',
+  async () => {
+    // Nobody can make folders in /proc, whatever its permissions say.
+    const { code, stdout, stderr } = await thickset('run', 'setup.yaml', '--out', '/proc/thickset', '--json');
+    expect({ code, stdout }).toEqual({ code: 4, stdout: '' });
+    expect(stderr).toMatch(
+      /^\/proc\/thickset: cannot be written \(.*\); choose another folder with --out\n$/,
+    );
+  },
+);
 
 test('figures that cannot be written are shown all the same', async () => {
   await thickset('run', 'setup.yaml', '--out', 'blocked', '--histories', '1000');
