@@ -3,6 +3,7 @@ import type { CurveRow, FittedQuantity } from '../efficiency/curve-rows.js';
 import type { CurveFit } from '../efficiency/fit-curve.js';
 import type { StoredResult } from '../result/stored-result.js';
 import { clip } from '../show.js';
+import { displayWidth } from './display-width.js';
 import { formatFigure, formatNumber, formatPercent, relativeError } from './figure-format.js';
 import { plotLogLog } from './log-plot.js';
 import type { Style } from './style.js';
@@ -29,7 +30,10 @@ export function curveSections({ efficiency }: StoredResult, style: Style): strin
   });
 }
 
-/** Efficiencies per photon emitted with their errors, and per photon that strikes the front face. */
+/** The last ones of the table. */
+const INTRINSIC_COLUMNS = 2;
+
+/** Efficiencies per photon emitted with their errors; where there is room, per photon that strikes the front face. */
 function tableLines(rows: readonly CurveRow[], style: Style): string[] {
   const figures = (quantity: FittedQuantity): string[] =>
     alignFigures(
@@ -54,11 +58,17 @@ function tableLines(rows: readonly CurveRow[], style: Style): string[] {
     plain('intrinsic_full_energy'),
     plain('intrinsic_interacting'),
   ];
-  const [first, second, ...lines] = renderTable([
-    ['', 'per photon emitted', '', '', '', 'incident', ''],
-    ['keV', 'full energy', 'error', 'total', 'error', 'full', 'total'],
-    ...rows.map((_, at) => columns.map((column) => column[at])),
-  ]);
+  const table = (shown: number): string[] =>
+    renderTable(
+      [
+        ['', 'per photon emitted', '', '', '', 'incident', ''],
+        ['keV', 'full energy', 'error', 'total', 'error', 'full', 'total'],
+        ...rows.map((_, at) => columns.map((column) => column[at])),
+      ].map((cells) => cells.slice(0, shown)),
+    );
+  const whole = table(columns.length);
+  const fits = whole.every((line) => displayWidth(line) <= style.width);
+  const [first, second, ...lines] = fits ? whole : table(columns.length - INTRINSIC_COLUMNS);
   return [style.note(first), style.note(second), ...lines];
 }
 
