@@ -112,7 +112,7 @@ function check(
       dose: tallyKeys.dose ?? [],
       dosePoints: dosePointNames(tallyKeys),
       coincidence: tallyKeys.coincidence ?? false,
-      lines: emitted && emitted.emission.lines.length,
+      hasLines: emitted && emitted.emission.lines.length > 0,
     },
     problems,
   );

@@ -33,8 +33,8 @@ export function makePhysics(keys: PhysicsKeys, warnings: SetupWarning[]): Physic
 export interface RunNeeds {
   readonly stack: StackDraft;
   readonly hasSides: boolean;
-  /** Number of source lines; 0: a spectrum; null: not known. */
-  readonly lines: number | null;
+  /** null: not known. */
+  readonly hasLines: boolean | null;
   readonly dose: readonly (DoseQuantity | undefined)[];
   /** Names of the dose points. */
   readonly dosePoints: readonly string[];
@@ -88,7 +88,6 @@ function missingFor(quantity: QuantityName, needs: RunNeeds): Complaint | null {
     case 'side':
       return hasSides ? null : lacks('layers with an edge', 'add extent, or give a layer a radius');
     case 'detector':
-    case 'lines':
     case 'detector_total':
     case 'coincidence':
       if (stack.layers.length > 0 && stack.detectors.length === 0) {
@@ -109,18 +108,15 @@ function missingFor(quantity: QuantityName, needs: RunNeeds): Complaint | null {
 /** What a figure of detectors lacks beyond a detector. */
 function lackOfDetectors(
   quantity: QuantityName,
-  { lines, coincidence }: RunNeeds,
+  { hasLines, coincidence }: RunNeeds,
   lacks: (what: string, wayOut: string) => Complaint,
 ): Complaint | null {
   const kind = QUANTITIES[quantity];
   if (kind === 'coincidence' && !coincidence) {
     return lacks('detectors in coincidence', 'add coincidence: true to the tally');
   }
-  if (kind === 'detector' && lines === 0) {
-    return lacks('source lines, not a spectrum', 'watch interacting instead');
-  }
-  return kind === 'lines' && lines !== null && lines < 2
-    ? lacks('several source lines', 'watch full_energy instead')
+  return kind === 'detector' && hasLines === false
+    ? lacks('source lines, not a spectrum', 'watch interacting instead')
     : null;
 }
 

@@ -120,8 +120,6 @@ export const QUANTITIES = {
   interacting: 'layer',
   full_energy: 'detector',
   peak_to_total: 'detector',
-  absolute_full_energy: 'lines',
-  intrinsic_full_energy: 'detector',
   intrinsic_interacting: 'detector_total',
   anticoincidence: 'coincidence',
   coincidence: 'coincidence',

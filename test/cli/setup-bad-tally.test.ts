@@ -217,6 +217,21 @@ describe('The reader of run options', () => {
       'run.until.layer: can is no detector (line 5, column 45); detectors here: crystal',
     ],
     [
+      'coincidence of one detector',
+      `${detector('{}')}tally: {coincidence: true}\n`,
+      'tally.coincidence: needs two detectors or more, there is one (line 4, column 22); add detector: {} to another layer',
+    ],
+    [
+      'coincidence without detectors',
+      more('tally: {coincidence: true}'),
+      'tally.coincidence: needs two detectors or more, there is none (line 3, column 22); add detector: {} to another layer',
+    ],
+    [
+      'until a coincidence that is not scored',
+      `${detector('{}')}run: {until: {quantity: coincidence, relative_error: 1 %}}\n`,
+      'run.until.quantity: coincidence needs detectors in coincidence (line 4, column 25); add coincidence: true to the tally',
+    ],
+    [
       'side escape without sides',
       more('run: {until: {quantity: side_escape, relative_error: 1 %}}'),
       'run.until.quantity: side_escape needs layers with an edge (line 3, column 25); add extent, or give a layer a radius',
