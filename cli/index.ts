@@ -18,7 +18,7 @@ export type { DetectorResponse, WidthChoice } from './response/respond.js';
 export type { FeatureName, FeatureStatus, PeakRow } from './response/peaks/peak-row.js';
 export { fwhmKeV } from './response/resolution.js';
 export { efficiencyAt, type LogPolynomial } from './efficiency/log-polynomial.js';
-export { packCurve } from './efficiency/pack-curve.js';
+export { efficiencyOf, writeCurve } from './efficiency/pack-curve.js';
 export type { CurveRow } from './efficiency/curve-rows.js';
 export type { CurveFit } from './efficiency/fit-curve.js';
 export { readManifest, readResult, writeResult, type StoredResult } from './result/stored-result.js';

@@ -1,9 +1,11 @@
 /** An efficiency curve as the files of its folder, and its points read back from there. */
 import type { CurvePoint, EfficiencyCurve, RunResult, StopReason, Warning } from '../../engine/index.js';
+import { replaceResult } from '../result/result-folder.js';
 import {
   makeManifest,
   MANIFEST_NAME,
   sha256,
+  type Manifest,
   type ManifestEnergy,
   type RunRecord,
 } from '../result/manifest.js';
@@ -19,27 +21,49 @@ import { curveRows } from './curve-rows.js';
 import { encodeCurve, encodeFits } from './curve-tables.js';
 import { fitCurves } from './fit-curve.js';
 
+/** The rows of a curve and the polynomials fitted to them. */
+export function efficiencyOf({ setup, points }: EfficiencyCurve): NonNullable<StoredResult['efficiency']> {
+  const totals = points.flatMap((point) => point.totals);
+  const detectors = setup.stack.flatMap(({ name, detector }) => (detector === null ? [] : [name]));
+  const rows = curveRows(points, totals, detectors);
+  return { rows, fits: fitCurves(setup, rows) };
+}
+
+/**
+ * Writes a curve to `folder` as `thickset run` does: totals.arrow, efficiency.arrow, efficiency_fit.arrow and
+ * manifest.json, all or nothing. What is in the folder from an earlier run is replaced.
+ * @throws ThicksetError disk_full, output_not_writable
+ */
+export function writeCurve(
+  folder: string,
+  curve: EfficiencyCurve,
+  record: Partial<RunRecord> = {},
+): Manifest {
+  const whole = { setupText: null, threads: null, finished: new Date(), ...record };
+  const { files, manifest } = packCurve(curve, [], whole);
+  replaceResult(folder, files);
+  return manifest;
+}
+
 /** Turns a curve into files, without touching the disk. */
 export function packCurve(
   curve: EfficiencyCurve,
   warnings: readonly Warning[],
   record: RunRecord,
 ): PackedResult {
-  const { setup, points } = curve;
+  const { points } = curve;
   const totals = points.flatMap((point) => point.totals);
-  const detectors = setup.stack.flatMap(({ name, detector }) => (detector === null ? [] : [name]));
-  const rows = curveRows(points, totals, detectors);
-  const fits = fitCurves(setup, rows);
+  const efficiency = efficiencyOf(curve);
   const files = new Map<string, Uint8Array>([
     [TOTALS_NAME, encodeTotals(totals)],
-    [EFFICIENCY_NAME, encodeCurve(rows)],
-    [FITS_NAME, encodeFits(fits)],
+    [EFFICIENCY_NAME, encodeCurve(efficiency.rows)],
+    [FITS_NAME, encodeFits(efficiency.fits)],
   ]);
   const hashes = Object.fromEntries([...files].map(([name, content]) => [name, sha256(content)]));
   const whole = { ...asOneRun(curve), warnings: [...warnings, ...mergeWarnings(points)] };
   const manifest = { ...makeManifest(whole, record, hashes), energies: points.map(describeEnergy) };
   files.set(MANIFEST_NAME, Buffer.from(`${JSON.stringify(manifest, null, 2)}\n`));
-  return { manifest, totals, spectra: [], efficiency: { rows, fits }, files };
+  return { manifest, totals, spectra: [], efficiency, files };
 }
 
 /** All runs of a curve as if they were one that emits its energies one after the other. */

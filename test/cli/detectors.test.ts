@@ -84,10 +84,10 @@ describe('a run with a nuclide, an activity and two detectors', () => {
     const rate = result.rates.find(({ quantity }) => quantity === 'incident')!;
     expect(rate.per_second.mean).toBeCloseTo(0.8501 * 2000, 6);
     expect(rate.in_live_time.mean).toBeCloseTo(0.8501 * 2000 * 300, 4);
-    const full = (rows: readonly { quantity: string; layer: string | null }[]) =>
-      rows.find(({ quantity, layer }) => quantity === 'full_energy' && layer === 'thick');
-    const perPhoton = full(result.totals) as Value;
-    const { per_second: perSecond } = full(result.rates) as Counts;
+    const isFull = (row: { quantity: string; layer: string | null }) =>
+      row.quantity === 'full_energy' && row.layer === 'thick';
+    const perPhoton = result.totals.find(isFull)!;
+    const { per_second: perSecond } = result.rates.find(isFull)!;
     expect(perSecond.mean / perPhoton.mean).toBeCloseTo(1700.2, 6);
     expect(perSecond.std_error / perPhoton.std_error).toBeCloseTo(1700.2, 6);
     expect(result.rates.map(({ quantity }) => quantity)).not.toContain('peak_to_total');
