@@ -7,15 +7,15 @@ import { errors, EXIT_CODES } from './errors.js';
 import { onInterrupt } from './interrupt.js';
 import { calibrate, printDryRun } from './sweep/dry-run.js';
 import { pointsOf } from './sweep/points-table.js';
-import type { BeginRecord } from './sweep/records.js';
-import { SweepFolder } from './sweep/sweep-folder.js';
+import { runSweep, type SweepOutcome } from './sweep/run-sweep.js';
+import type { SweepFolderChoice } from './sweep/sweep-folder.js';
 import { beginRecord } from './sweep/sweep-identity.js';
 import { countStatus } from './sweep/sweep-manifest.js';
 import { showSweepProgress } from './sweep/sweep-progress.js';
 import { readSweepFile, type SweepFile } from './sweep/sweep-reader.js';
-import { SweepRunner, type SweepEnd } from './sweep/sweep-runner.js';
+import type { SweepEnd } from './sweep/sweep-runner.js';
 import { printSweep } from './sweep/sweep-summary.js';
-import { writeTable } from './sweep/sweep-table.js';
+import type { SweepView } from './sweep/sweep-text.js';
 import { formatCount } from './text/figure-format.js';
 
 interface SweepOptions {
@@ -60,15 +60,15 @@ async function sweepCommand(path: string, options: SweepOptions): Promise<void> 
   printWarnings(file.warnings, options);
   if (options.dryRun) return dryRun(file, options);
   if (options.out === undefined) throw errors.usage('option --out <folder> is missing');
-  const begin = beginRecord(file, options.shard ?? null);
-  const { overwrite = false, resume = false } = options;
-  const folder = new SweepFolder(options.out, { overwrite, resume }, begin);
-  try {
-    reportDamage(folder, options);
-    await play(file, begin, folder, options);
-  } finally {
-    folder.release();
-  }
+  const { out, json, overwrite = false, resume = false } = options;
+  const threads = options.threads ?? availableParallelism();
+  const interrupt = onInterrupt(() =>
+    say('\nFinishing the batches in hand; press Ctrl-C again to stop at once.'),
+  );
+  const { view, end } = await play(file, out, { overwrite, resume }, threads, interrupt.signal, options);
+  interrupt.dispose();
+  await printSweep(view, out, { json, threads });
+  conclude(end, view);
 }
 
 async function dryRun(file: SweepFile, options: SweepOptions): Promise<void> {
@@ -85,58 +85,39 @@ async function dryRun(file: SweepFile, options: SweepOptions): Promise<void> {
 }
 
 async function play(
-  { sweep }: SweepFile,
-  begin: BeginRecord,
-  folder: SweepFolder,
+  file: SweepFile,
+  out: string,
+  choice: SweepFolderChoice,
+  threads: number,
+  signal: AbortSignal,
   options: SweepOptions,
-): Promise<void> {
-  const threads = options.threads ?? availableParallelism();
-  const interrupt = onInterrupt(() =>
-    say('\nFinishing the batches in hand; press Ctrl-C again to stop at once.'),
-  );
-  const progress = await showSweepProgress(sweep, options.quiet ?? false);
+): Promise<SweepOutcome> {
+  const progress = await showSweepProgress(file.sweep, options.quiet ?? false);
   const simulator = new Simulator(threads);
-  const runner = new SweepRunner(sweep, folder, simulator, {
-    shard: options.shard ?? null,
-    checkpointS: options.checkpoint,
-    signal: interrupt.signal,
-    onProgress: progress?.update,
-    warn: (message) => printWarnings([{ code: 'state', message, count: 1 }], options),
-  });
-  let end: SweepEnd;
   try {
-    end = await runner.run();
+    return await runSweep(file, out, choice, simulator, {
+      shard: options.shard ?? null,
+      checkpointS: options.checkpoint,
+      signal,
+      onProgress: progress?.update,
+      warn: (message) => printWarnings([{ code: 'journal', message, count: 1 }], options),
+    });
   } finally {
     progress?.clear();
     await simulator.close();
   }
-  const { entries: points, elapsedS } = runner;
-  writeTable(folder, begin, points, { elapsedS, threads });
-  folder.close();
-  interrupt.dispose();
-  const state = end === 'interrupted' ? 'stopped' : 'ended';
-  await printSweep({ begin, points, elapsedS, state }, folder.folder, { json: options.json, threads });
-  conclude(end, begin, runner);
 }
 
-function conclude(end: SweepEnd, begin: BeginRecord, { entries }: SweepRunner): void {
+function conclude(end: SweepEnd, { begin, points }: SweepView): void {
   if (end === 'interrupted') {
     say('Interrupted. Go on with --resume.');
     process.exitCode = EXIT_CODES.interrupted;
     return;
   }
-  const { failed, not_begun: notBegun } = countStatus(begin, entries);
+  const { failed, not_begun: notBegun } = countStatus(begin, points);
   if (failed > 0) say(`${formatCount(failed)} points failed.`);
   if (notBegun > 0) say(`There was no time for ${formatCount(notBegun)} points.`);
   if (failed + notBegun > 0) process.exitCode = EXIT_CODES.incomplete;
-}
-
-/** What was lost of the journal is found out anew. */
-function reportDamage({ log }: SweepFolder, options: SweepOptions): void {
-  if (log === null || log.damagedAt.length === 0) return;
-  const places = log.damagedAt.join(', ');
-  const message = `the journal is damaged at byte ${places}; what it told there is played again`;
-  printWarnings([{ code: 'journal', message, count: 1 }], options);
 }
 
 function printWarnings(warnings: readonly Warning[], { quiet }: SweepOptions): void {

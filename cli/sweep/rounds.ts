@@ -67,14 +67,22 @@ function levelled(points: readonly PointInRound[], budgetS: number): Target[] {
       const batches = batchesFor(entry, error);
       return batches > entry.batches ? [[entry, batches]] : [];
     });
-  const largest = Math.max(...points.map(({ relativeError }) => relativeError), LEAST_ERROR);
-  let [low, high] = [Math.log(LEAST_ERROR), Math.log(largest)];
+  const largest = points.reduce((most, { relativeError }) => Math.max(most, relativeError), LEAST_ERROR);
+  // Lower than what the least precise point can reach in this round would be time spent on the wrong points.
+  const lowest = points.reduce((most, entry) => Math.max(most, errorAfter(entry)), LEAST_ERROR);
+  let [low, high] = [Math.log(lowest), Math.log(largest)];
+  if (costOf(targets(lowest)) <= budgetS) return targets(lowest);
   for (let i = 0; i < BISECTIONS; i++) {
     const middle = (low + high) / 2;
     if (costOf(targets(Math.exp(middle))) > budgetS) low = middle;
     else high = middle;
   }
   return targets(Math.exp(high));
+}
+
+/** The error of a point that grows as much as it may. */
+function errorAfter({ batches, batchesPlanned, relativeError }: PointInRound): number {
+  return relativeError * Math.sqrt(batches / Math.min(batchesPlanned, MOST_GROWTH * batches));
 }
 
 /** Batches for a point to reach an error, within what it may grow in one round. */

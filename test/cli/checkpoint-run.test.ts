@@ -1,10 +1,9 @@
-import { spawn, type ChildProcess } from 'node:child_process';
 import * as fs from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
-import { arrowFiles, runKilled } from './kills.js';
-import { CLI, runCli } from './run-cli.js';
+import { arrowFiles, runKilled, startCli } from './kills.js';
+import { runCli } from './run-cli.js';
 
 const SETUP = `title: Crystal
 source: {kind: point, distance: 10 cm, energy: 661.7 keV}
@@ -17,17 +16,6 @@ run: {histories: 1.5e6}
 
 let folder: string;
 const thickset = (...args: string[]) => runCli(args, { cwd: folder });
-/** The program, to be stopped from here. */
-const start = (args: readonly string[]) =>
-  spawn(process.execPath, [CLI, ...args], { cwd: folder, stdio: 'ignore' });
-const ended = (child: ChildProcess) =>
-  new Promise<number | null>((resolve) => child.on('close', (code) => resolve(code)));
-
-/** Waits until something is seen. */
-async function until(seen: () => boolean): Promise<void> {
-  while (!seen()) await new Promise((resolve) => setTimeout(resolve, 5));
-}
-
 const names = (of: string) => fs.readdirSync(join(folder, of)).sort();
 
 beforeAll(async () => {
@@ -51,10 +39,10 @@ describe('a run that was stopped before its end', () => {
   const checkpoint = () => join(folder, 'stopped', 'checkpoint.bin');
   beforeAll(async () => {
     const args = ['run', 'setup.yaml', '--out', 'stopped', '--quiet', '--checkpoint', '20 ms'];
-    const child = start(args);
+    const { child, ended, until } = startCli(args, folder);
     await until(() => fs.existsSync(join(folder, 'stopped', 'checkpoint-previous.bin')));
     child.kill('SIGINT');
-    expect(await ended(child)).toBe(7);
+    expect(await ended).toBe(7);
   });
 
   test('leaves its result so far, and two states to go on from', () => {
@@ -136,7 +124,7 @@ test('resuming a finished run plays nothing and shows its result', async () => {
 
 test('a folder in which a process works is refused, one whose process was killed is not', async () => {
   const args = ['run', 'setup.yaml', '--out', 'held', '--histories', '1e8', '--quiet'];
-  const child = start(args);
+  const { child, ended, until } = startCli(args, folder);
   try {
     await until(() => fs.existsSync(join(folder, 'held', '.lock')));
     const second = await thickset('run', 'setup.yaml', '--out', 'held', '--overwrite');
@@ -146,7 +134,7 @@ test('a folder in which a process works is refused, one whose process was killed
     );
   } finally {
     child.kill('SIGKILL');
-    await ended(child);
+    await ended;
   }
   const third = await thickset('run', 'setup.yaml', '--out', 'held', '--histories', '1000', '--quiet');
   expect(third.code).toBe(0);

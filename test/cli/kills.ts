@@ -1,6 +1,6 @@
 /** Kills the program at random moments and lets it go on, until it ends by itself. */
-import { spawn } from 'node:child_process';
-import { readdirSync, readFileSync, statSync } from 'node:fs';
+import { spawn, type ChildProcess } from 'node:child_process';
+import { existsSync, readdirSync, readFileSync, statSync } from 'node:fs';
 import { join } from 'node:path';
 import seedrandom from 'seedrandom';
 import { CLI } from './run-cli.js';
@@ -48,6 +48,33 @@ function live(args: readonly string[], cwd: string, lifeMs: number | null) {
       resolve({ code, signal, stderr });
     });
   });
+}
+
+/** The program while it runs. */
+export interface Started {
+  readonly child: ChildProcess;
+  /** Its exit code. */
+  readonly ended: Promise<number | null>;
+  /** Resolves when something is seen; rejects when the program ends before. */
+  readonly until: (seen: () => boolean) => Promise<void>;
+}
+
+/** `thickset ARGS`, to be stopped by the caller. */
+export function startCli(args: readonly string[], cwd: string): Started {
+  const child = spawn(process.execPath, [CLI, ...args], { cwd, stdio: 'ignore' });
+  const ended = new Promise<number | null>((resolve) => child.on('close', (code) => resolve(code)));
+  const until = async (seen: () => boolean) => {
+    while (!seen()) {
+      if (child.exitCode !== null) throw new Error(`thickset ${args.join(' ')} ended with ${child.exitCode}`);
+      await new Promise((resolve) => setTimeout(resolve, 5));
+    }
+  };
+  return { child, ended, until };
+}
+
+/** Size of a file, 0 where there is none. */
+export function sizeOf(path: string): number {
+  return existsSync(path) ? statSync(path).size : 0;
 }
 
 /** The Arrow files in a folder and below it, with their bytes; the rest may differ from run to run. */

@@ -22,16 +22,25 @@ test('points that were never played come first, with one batch each', () => {
 });
 
 test('time goes where errors are largest, and brings them to one level', () => {
-  const points = [0.04, 0.02, 0.01].map((relativeError, at) =>
+  const points = [0.04, 0.03, 0.01].map((relativeError, at) =>
     point({ point: at, relativeError, batches: 100 }),
   );
-  const round = planRound(points, 300);
-  expect([...round.keys()]).toEqual([0]);
-  const more = planRound(points, 600);
-  expect([...more.keys()]).toEqual([0, 1]);
-  const errors = [...more].map(([at, batches]) => points[at].relativeError * Math.sqrt(100 / batches));
-  // The dearer point may not grow by more than a factor of 4: 0.04 → 0.02.
-  expect(errors[0]).toBeCloseTo(0.02, 5);
+  expect([...planRound(points, 70)]).toEqual([[0, 170]]);
+  const round = planRound(points, 200);
+  expect([...round.keys()]).toEqual([0, 1]);
+  const errors = [...round].map(([at, batches]) => points[at].relativeError * Math.sqrt(100 / batches));
+  expect(errors[0] / errors[1]).toBeCloseTo(1, 2);
+});
+
+test('no time goes to points that are more precise than the least precise one can get in the round', () => {
+  const points = [0.04, 0.03, 0.019].map((relativeError, at) =>
+    point({ point: at, relativeError, batches: 100 }),
+  );
+  // A point grows by a factor of 4 at most: 0.04 gets to 0.02, and 0.03 need not get further.
+  expect([...planRound(points, 1e9)]).toEqual([
+    [0, 400],
+    [1, 225],
+  ]);
 });
 
 test.each([1, 10, 100, 1000])('a budget of %d s is kept, whatever a batch costs', (budgetS) => {
