@@ -24,12 +24,12 @@ export class AnalogDose {
   }
 
   /** A photon leaves under direction cosine w. */
-  leave(isFar: boolean, energyKeV: number, cell: number, w: number): void {
+  leave(isFar: boolean, energyKeV: number, cell: number, w: number, weight = 1): void {
     const { doseLines, cellCount } = this.problem;
     const first = isFar ? 0 : this.doses;
     for (let d = 0; d < this.doses; d++) {
       const at = (d * cellCount + cell) * DOSE_LINE;
-      this.pending[first + d] += (doseLines[at] + doseLines[at + 1] * energyKeV) / Math.abs(w);
+      this.pending[first + d] += (weight * (doseLines[at] + doseLines[at + 1] * energyKeV)) / Math.abs(w);
     }
     this.isTouched = true;
   }
@@ -50,13 +50,15 @@ export class AnalogDose {
   closeBatch(histories: number): void {
     const { figureSum, figureSquare, layout } = this.tally;
     const { dose } = layout;
-    const exact = this.problem.faceDose!.figures;
+    const exact = this.problem.faceDose?.figures;
     for (let d = 0; d < this.doses; d++) {
       this.put(dose.farFigure + d, d);
       this.put(dose.frontFigure + d, this.doses + d);
       for (const figure of [dose.farUncollidedFigure + d, dose.farFreeFigure + d]) {
-        figureSum[figure] = histories * exact[figure];
-        figureSquare[figure] = histories * exact[figure] ** 2;
+        // Of stacks with edges the uncollided dose is not known.
+        const value = exact === undefined ? NaN : exact[figure];
+        figureSum[figure] = histories * value;
+        figureSquare[figure] = histories * value ** 2;
       }
     }
   }

@@ -38,18 +38,12 @@ export function doseRows(run: RunFigures): QuantityRow[] {
     ...faceRows(run, quantity, d),
   ]);
   if (run.layout.weighted) return rows;
-  // Analog transport scores at the faces of endless layers alone.
-  const isScored = (row: QuantityRow) => !hasSides(setup) && row.layer === null;
-  return rows.map((row) => (isScored(row) ? row : unknown(row)));
+  // Analog transport scores at the faces alone.
+  return rows.map((row) => (row.layer === null ? row : unknown(row)));
 }
 
 function unknown({ quantity, layer, lineKeV, unit }: QuantityRow): QuantityRow {
   return { quantity, layer, lineKeV, mean: null, stdError: null, unit };
-}
-
-/** Whether the stack has lateral surfaces. */
-function hasSides({ stack, extent }: Setup): boolean {
-  return extent !== null || stack.some((layer) => layer.radiusCm !== null);
 }
 
 function pointRows(

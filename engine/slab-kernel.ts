@@ -167,6 +167,8 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
           const end = z + (w * tau) / attenuation;
           if (w > 0 && end > boundariesCm[layer + 1]) {
             tau -= ((boundariesCm[layer + 1] - z) * attenuation) / w;
+            // Rounding must not leave a length of 0, which has no end in vacuum.
+            if (tau <= 0) tau = Number.MIN_VALUE;
             z = boundariesCm[layer + 1];
             if (++layer === layers) {
               event = LEFT_FAR;
@@ -174,6 +176,7 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
             }
           } else if (w < 0 && end < boundariesCm[layer]) {
             tau -= ((boundariesCm[layer] - z) * attenuation) / w;
+            if (tau <= 0) tau = Number.MIN_VALUE;
             z = boundariesCm[layer];
             if (--layer < 0) {
               event = LEFT_FRONT;

@@ -6,6 +6,7 @@
  * second is followed, from a point of the way drawn by the law of flight. A pulse can come of the second alone, and
  * after the first collision everything is as nature makes it: so every pulse height keeps its exact expectation.
  */
+import { AnalogDose } from './analog-dose.js';
 import { clearance, turn } from '../geometry/index.js';
 import type { BatchTally } from './batch-tally.js';
 import { lineEnergyKeV, pickLine } from './emission.js';
@@ -26,7 +27,8 @@ export function runSolidBatch(problem: Problem, histories: number, site: Site, t
   const { stack, biased } = solid;
   const { emission, grid, slotOfLayer } = problem;
   const { random, secondaries } = site;
-  const scores = new SolidScores(tally, problem.cutoffKeV);
+  const dose = tally.layout.dose.doses > 0 ? new AnalogDose(problem, tally) : null;
+  const scores = new SolidScores(tally, problem.cutoffKeV, grid, dose);
   const first = new FirstFlight(problem.layers);
   const waiting = new WaitingPhotons();
   const start = new SolidStart();
@@ -86,6 +88,7 @@ export function runSolidBatch(problem: Problem, histories: number, site: Site, t
     }
     scores.close(photon);
   }
+  dose?.closeBatch(histories);
 }
 
 const doubleView = new Float64Array(1);

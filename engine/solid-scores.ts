@@ -1,6 +1,8 @@
 /** What one history of a stack with edges scores: photons that leave, energy that stays, pulses. */
-import { LEFT_FAR } from '../geometry/index.js';
+import { LEFT_FAR, LEFT_SIDE, W } from '../geometry/index.js';
+import type { AnalogDose } from './analog-dose.js';
 import { addFigure, closeHistory, MAX_TOUCHED, type BatchTally } from './batch-tally.js';
+import { cellOf, type EnergyGrid } from './energy-grid.js';
 import { ENERGY, WEIGHT } from './photon.js';
 import { scoreCoincidences } from './coincidence.js';
 import { binOf, FIGURE, FULL_ENERGY, type TallyLayout } from './tally-layout.js';
@@ -27,6 +29,8 @@ export class SolidScores {
   constructor(
     private readonly tally: BatchTally,
     private readonly cutoffKeV: number,
+    private readonly grid: EnergyGrid,
+    private readonly dose: AnalogDose | null,
   ) {
     const { layers, transmittedCell, reflectedCell, sideEscapeCell } = tally.layout;
     this.layout = tally.layout;
@@ -56,6 +60,15 @@ export class SolidScores {
     this.outKeV[surface] += weight * photon[ENERGY];
     if (untouched && left === LEFT_FAR) this.source[1] += weight;
     this.add(this.outCell[surface] + binOf(this.layout, photon[ENERGY]), weight);
+    if (this.dose !== null && left !== LEFT_SIDE) {
+      this.dose.leave(
+        left === LEFT_FAR,
+        photon[ENERGY],
+        cellOf(this.grid, photon[ENERGY]),
+        photon[W],
+        weight,
+      );
+    }
   }
 
   /** Energy has stayed in a layer. */
@@ -74,6 +87,7 @@ export class SolidScores {
       outKeV[surface] = 0;
     }
     if (source[1] > 0) addFigure(tally, FIGURE.uncollided, source[1]);
+    this.dose?.closeHistory();
     this.closePulses(photon[WEIGHT]);
     closeHistory(tally, this.touched);
   }

@@ -54,17 +54,14 @@ export function oddityWarnings({ dopplerGivenUp, strayed }: Readonly<Oddities>):
 }
 
 /** Doses that were asked for but cannot be scored in this transport. */
-export function doseWarnings({ tally, extent, stack }: Setup, weighted: boolean): Warning[] {
-  const hasSides = extent !== null || stack.some((layer) => layer.radiusCm !== null);
-  const atFaces = hasSides ? tally.dose.length : 0;
-  if (weighted || atFaces + tally.dosePoints.length + (tally.depthProfile === null ? 0 : 1) === 0) return [];
+export function doseWarnings({ tally }: Setup, weighted: boolean): Warning[] {
+  if (weighted || tally.dosePoints.length + (tally.depthProfile === null ? 0 : 1) === 0) return [];
   return [
     {
       code: 'dose_not_scored',
       message:
-        'dose points, depth profiles, and doses of layers with an edge are left unknown here: deep transport scores ' +
-        'them, and it takes neither detector layers nor layers with an edge; run the stack without detector, extent ' +
-        'and radius to get them',
+        'dose points and depth profiles are left unknown here: deep transport scores them, and it takes neither ' +
+        'detector layers nor layers with an edge; run the stack without detector, extent and radius to get them',
       count: 1,
     },
   ];
