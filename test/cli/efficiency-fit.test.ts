@@ -2,6 +2,9 @@
  * Polynomials fitted to efficiencies. Limits on statistics are 4 standard errors, which a right value exceeds by
  * chance once in 16,000 times (normal law); seeds are fixed.
  */
+import { mkdtempSync, rmSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
 import seedrandom from 'seedrandom';
 import { describe, expect, test } from 'vitest';
 import type { CurveRow } from '../../cli/efficiency/curve-rows.js';
@@ -13,6 +16,10 @@ import {
   fitLogPolynomial,
   type CurvePoint,
 } from '../../cli/efficiency/log-polynomial.js';
+import { efficiencyOf, writeCurve } from '../../cli/efficiency/pack-curve.js';
+import { readResult } from '../../cli/result/stored-result.js';
+import { parseSetup } from '../../cli/setup-reader.js';
+import { simulateEfficiency } from '../../engine/index.js';
 import { leastSquares } from '../../cli/response/least-squares.js';
 import { resolveMaterial } from '../../materials/index.js';
 
@@ -210,6 +217,23 @@ describe('the fits of a curve', () => {
     expect(decodeFits(encodeFits(fits))).toEqual(fits);
     expect(decodeFits(encodeFits([]))).toEqual([]);
   });
+});
+
+test('a program gets rows and fits of a curve, and writes what it reads back', async () => {
+  const setup = parseSetup(
+    'source: {kind: beam, energies: {from: 100 keV, to: 1 MeV, count: 4}}\n' +
+      'stack: [{name: crystal, material: NaI, thickness: 2 cm, detector: {}}]\n' +
+      'run: {histories: 2000}\n',
+  ).setup;
+  const curve = await simulateEfficiency(setup, { threads: 1 });
+  const { rows: made, fits } = efficiencyOf(curve);
+  expect(made.map(({ energyKeV }) => energyKeV)).toEqual(setup.energyGridKeV);
+  expect(fits.map(({ quantity }) => quantity)).toEqual(['full_energy', 'interacting']);
+  const folder = mkdtempSync(join(tmpdir(), 'thickset-curve-'));
+  writeCurve(folder, curve);
+  expect(readResult(folder).efficiency).toEqual({ rows: made, fits });
+  expect(readResult(folder).manifest.energies).toHaveLength(4);
+  rmSync(folder, { recursive: true });
 });
 
 test('the rows of a curve survive their Arrow table to the bit, unknown values as such', () => {

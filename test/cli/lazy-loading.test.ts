@@ -28,7 +28,9 @@ test('the walk through the imports sees packages and folders', () => {
 
 test('summary loads neither the engine nor the setup reader, so that it starts quickly', () => {
   const heavy = loaded('cli/summary-command.js').filter((name) =>
-    /^(zod|yaml|piscina|ml-matrix|string-width|materials\/(?!nearest\.js)|geometry\/|engine\/(?!setup\.js|reliability-verdict\.js))/.test(name),
+    /^(zod|yaml|piscina|ml-matrix|string-width|materials\/(?!nearest\.js)|geometry\/|engine\/(?!setup\.js|reliability-verdict\.js))/.test(
+      name,
+    ),
   );
   expect(heavy).toEqual([]);
 });

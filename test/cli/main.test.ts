@@ -115,15 +115,19 @@ describe('help', () => {
       while it runs
 
       Arguments:
-        folder             folder written by thickset run or thickset sweep
+        folder                  folder written by thickset run or thickset sweep
 
       Options:
-        --spectra <which>  spectra to draw: those that leave and pulse heights, every
-                           one, or none (choices: "main", "all", "none", default:
-                           "main")
-        --width <columns>  width of the text; default: that of the terminal
-        --json             print one JSON object instead
-        -h, --help         display help for command
+        --spectra <which>       spectra to draw: those that leave and pulse heights,
+                                every one, or none (choices: "main", "all", "none",
+                                default: "main")
+        --fwhm <[layer=]width>  width of the peaks instead of that of the setup, as in
+                                "7 % at 661.7 keV"; none: as tallied; may be repeated
+        --registered <file>     write the spectra that the detectors register to this
+                                file (Arrow)
+        --width <columns>       width of the text; default: that of the terminal
+        --json                  print one JSON object instead
+        -h, --help              display help for command
       "
     `);
   });

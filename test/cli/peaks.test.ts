@@ -307,6 +307,16 @@ test('there is no Compton edge in a flat spectrum', () => {
   expect(comptonEdge(flat, [], 661.7)).toMatchObject({ status: 'absent', mean: null });
 });
 
+test('a step that is not where the Compton edge must be is not taken for it', () => {
+  const step = (at: number) =>
+    continuumOf(
+      Array.from({ length: 662 }, (_, bin) => (bin < at ? 200 : 10)),
+      1e6,
+    );
+  expect(comptonEdge(step(477), [], 661.7)).toMatchObject({ status: 'seen' });
+  expect(comptonEdge(step(430), [], 661.7)).toMatchObject({ status: 'unresolved', mean: null });
+});
+
 test('of many lines only those with a good share of the photons have broad features', () => {
   const run = play(
     { stack: [['NaI', 5, 'detector']], energyKeV: [200, 300, 400, 500, 661.7, 1332.5], seed: 'many' },

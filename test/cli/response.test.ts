@@ -181,6 +181,43 @@ describe('smearing', () => {
   });
 });
 
+describe('fine bins', () => {
+  const fine = counted(
+    Array.from({ length: 30_000 }, (_, i) => (i < 20_000 ? 1 + (i % 3) : 0)),
+    0.05,
+    1e6,
+  );
+  const coarse = counted(
+    Array.from({ length: 1500 }, (_, i) =>
+      sum(Array.from({ length: 20 }, (_, k) => fine.mean[20 * i + k] * 1e6)),
+    ),
+    1,
+    1e6,
+  );
+  const wide: Resolution = { kind: 'formula', a: 50, b: 0, c: 0 };
+
+  test('smeared by a wide peak give what wider bins give', () => {
+    const result = registered(fine, pulsesOf(fine, [], 1e6), wide);
+    const expected = registered(coarse, pulsesOf(coarse, [], 1e6), wide);
+    const highest = Math.max(...expected.mean);
+    for (let bin = 0; bin < 1500; bin++) {
+      const content = sum(result.mean.subarray(20 * bin, 20 * bin + 20));
+      expect(Math.abs(content - expected.mean[bin])).toBeLessThan(1e-3 * highest);
+    }
+    expect(sum(result.mean) / sum(fine.mean)).toBeCloseTo(1, 12);
+  });
+
+  test('do not make more bins above the spectrum than there are in it', () => {
+    const narrow = counted([10, 10, 10], 0.001, 1000);
+    const smeared = smear(pulsesOf(narrow, [], 1000), wide);
+    const edges = registeredEdges(narrow, smeared);
+    expect(edges.length).toBe(7);
+    // Eight standard deviations above the highest pulse.
+    expect(edges.at(-1)).toBeGreaterThanOrEqual(0.003 + (8 * 50) / 2.3549);
+    expect(sum(registeredSpectrum(narrow, edges, smeared, 0).mean)).toBeCloseTo(0.03, 12);
+  });
+});
+
 describe('windows', () => {
   const flat = (height: number) =>
     counted(

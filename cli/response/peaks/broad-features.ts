@@ -40,6 +40,8 @@ function groupsBetween(
 /** Groups that a step or a bump needs to be told from its neighbours. */
 const LEAST_GROUPS = 10;
 const EDGE_GROUPS = 80;
+/** What binding and scattering twice may move the edge by. */
+const EDGE_WITHIN = 0.05;
 const BUMP_GROUPS = 40;
 
 /**
@@ -67,6 +69,8 @@ export function comptonEdge(continuum: Continuum, peaks: readonly Bins[], lineKe
   const [before, after] = [groups[next - 1], groups[next]];
   const slope = (after.height.mean - before.height.mean) / (after.energyKeV - before.energyKeV);
   const mean = before.energyKeV + (half - before.height.mean) / slope;
+  // A step this far off belongs to another line, or to photons scattered in front of the detector.
+  if (Math.abs(mean / edgeKeV - 1) > EDGE_WITHIN) return UNRESOLVED;
   const heightError = Math.hypot(0.5 * spread, Math.max(error(before.height), error(after.height)));
   return { mean, stdError: heightError / Math.abs(slope), status: 'seen' };
 }
