@@ -8,6 +8,8 @@ import type { BatchResult } from './run-sums.js';
 export class WorkerPool {
   readonly threads: number;
   private readonly pool: Piscina;
+  /** Rejects when a thread cannot be kept alive, which the pool tells apart from a failed task. */
+  private readonly broken: Promise<never>;
 
   /** @param threads worker threads; default: the processors this process may use */
   constructor(threads?: number) {
@@ -19,11 +21,14 @@ export class WorkerPool {
       maxThreads: this.threads,
       concurrentTasksPerWorker: 1,
     });
+    this.broken = new Promise((_, reject) => this.pool.on('error', reject));
+    // Nobody may be waiting when it happens.
+    this.broken.catch(() => undefined);
   }
 
   /** Plays the batches of a task in one of the threads. Rejects when the thread fails or dies. */
   run(task: BatchTask): Promise<BatchResult[]> {
-    return this.pool.run(task) as Promise<BatchResult[]>;
+    return Promise.race([this.pool.run(task) as Promise<BatchResult[]>, this.broken]);
   }
 
   /** Ends the threads; tasks still under way are dropped. */
