@@ -4,15 +4,10 @@
  * bins on both sides.
  */
 import type { ManifestLayer, ManifestSource } from '../../result/manifest.js';
+import { ELECTRON_REST_KEV } from '../../../engine/constants.js';
 import type { Value } from '../pulses.js';
 import { range, type Continuum } from './continuum.js';
-import {
-  ELECTRON_REST_KEV,
-  SEEN_SIGMAS,
-  type FeatureName,
-  type FeatureStatus,
-  type PeakRow,
-} from './peak-row.js';
+import { SEEN_SIGMAS, type FeatureName, type FeatureStatus, type PeakRow } from './peak-row.js';
 
 /** A peak that may be there, from its lowest to its highest energy. */
 export interface Expected {

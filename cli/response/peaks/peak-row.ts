@@ -1,4 +1,5 @@
 /** What is said of each feature that a detector's spectrum may show. */
+import { ELECTRON_REST_KEV } from '../../../engine/constants.js';
 
 export type FeatureName =
   /** Counts, per source photon. */
@@ -36,9 +37,6 @@ export interface PeakRow {
 
 /** Standard errors by which a feature must stand out to be seen: by chance once in 700 times (normal law, one side). */
 export const SEEN_SIGMAS = 3;
-
-/** What of a line is rest energy of the electron; CODATA 2018. */
-export const ELECTRON_REST_KEV = 510.99895;
 
 /** Energy of a photon after it was scattered straight back (Compton's formula). */
 export function backscatteredKeV(energyKeV: number): number {
