@@ -50,3 +50,15 @@ export function parseShard(text: string): Shard {
   }
   return shard;
 }
+
+/** A text for the scheduler, which goes into a script: only what such texts are made of. */
+function schedulerText(pattern: RegExp, example: string): (text: string) => string {
+  return (text) => {
+    if (!pattern.test(text)) throw new InvalidArgumentError(`must be as in ${example}.`);
+    return text;
+  };
+}
+
+export const parsePartition = schedulerText(/^[\w.,-]+$/, 'day or day,night');
+export const parseJobTime = schedulerText(/^[\d:-]+$/, '30 (minutes), 2:00:00 or 1-12:00:00');
+export const parseMemory = schedulerText(/^\d+[KMGT]?$/i, '500M or 4G');

@@ -2,7 +2,15 @@
 import { availableParallelism } from 'node:os';
 import { Option, type Command } from 'commander';
 import { Simulator, type Shard, type Warning } from '../engine/index.js';
-import { parseShard, parseThreads, parseTime } from './command-options.js';
+import {
+  parseJobTime,
+  parseMemory,
+  parsePartition,
+  parseShard,
+  parseShards,
+  parseThreads,
+  parseTime,
+} from './command-options.js';
 import { errors, EXIT_CODES } from './errors.js';
 import { onInterrupt } from './interrupt.js';
 import { calibrate, printDryRun } from './sweep/dry-run.js';
@@ -18,13 +26,22 @@ import { printSweep } from './sweep/sweep-summary.js';
 import type { SweepView } from './sweep/sweep-text.js';
 import { formatCount } from './text/figure-format.js';
 
-interface SweepOptions {
+const DEFAULT_SHARDS = 10;
+
+export interface SweepOptions {
   readonly out?: string;
   readonly overwrite?: boolean;
   readonly resume?: boolean;
   readonly dryRun?: boolean;
   readonly shard?: Shard;
   readonly checkpoint: number;
+  readonly slurm?: boolean;
+  readonly shards: number;
+  readonly cpus: number;
+  readonly partition?: string;
+  readonly time?: string;
+  readonly mem?: string;
+  readonly print?: boolean;
   readonly threads?: number;
   readonly quiet?: boolean;
   readonly json?: boolean;
@@ -48,6 +65,17 @@ export function registerSweepCommand(program: Command): void {
         .default(CHECKPOINT_S, `${CHECKPOINT_S} s`),
     )
     .option('--shard <i/n>', 'run part i of n only; thickset merge puts the parts together', parseShard)
+    .option('--slurm', 'submit the sweep as jobs to Slurm, and follow them')
+    .option('--shards <number>', 'with --slurm: tasks of the array job', parseShards, DEFAULT_SHARDS)
+    .option('--cpus <number>', 'with --slurm: processors for each task', parseThreads, 1)
+    .option('--partition <name>', 'with --slurm: partition of the jobs', parsePartition)
+    .option(
+      '--time <limit>',
+      'with --slurm: time limit of each job; what is cut off is gone on with',
+      parseJobTime,
+    )
+    .option('--mem <size>', 'with --slurm: memory of each job', parseMemory)
+    .option('--print', 'with --slurm: print the job scripts and submit nothing')
     .option('--threads <number>', 'worker threads; default: one for each core', parseThreads)
     .option('--quiet', 'no progress and no warnings on stderr')
     .option('--json', 'print one JSON object instead of the summary')
@@ -60,6 +88,9 @@ async function sweepCommand(path: string, options: SweepOptions): Promise<void> 
   printWarnings(file.warnings, options);
   if (options.dryRun) return dryRun(file, options);
   if (options.out === undefined) throw errors.usage('option --out <folder> is missing');
+  if (options.slurm)
+    return (await import('./slurm/slurm-sweep.js')).slurmSweep(path, file, options.out, options);
+  if (options.print) throw errors.usage('option --print goes with --slurm');
   const { out, json, overwrite = false, resume = false } = options;
   const threads = options.threads ?? availableParallelism();
   const interrupt = onInterrupt(() =>

@@ -22,6 +22,8 @@ import { readSweepLog, type SweepLog } from './sweep-log.js';
 export const POINTS_NAME = 'points.arrow';
 const SPECTRA_FOLDER = 'spectra';
 const STATES_FOLDER = 'states';
+/** Shards and scripts of a sweep on a cluster; the merged sweep stands around it. */
+export const SLURM_FOLDER = 'slurm';
 const OWN_NAMES: ReadonlySet<string> = new Set([
   JOURNAL_NAME,
   POINTS_NAME,
@@ -56,7 +58,7 @@ export class SweepFolder {
     begin: BeginRecord,
   ) {
     try {
-      checkFolder(folder, choice);
+      checkSweepFolder(folder, choice);
       makeFolders(resolve(folder));
       this.lock = lockFolder(folder);
     } catch (cause) {
@@ -162,10 +164,11 @@ function statePath(folder: string, point: number): string {
   return join(folder, STATES_FOLDER, `point-${String(point + 1).padStart(DIGITS, '0')}.bin`);
 }
 
-function checkFolder(folder: string, { overwrite, resume }: SweepFolderChoice): void {
+/** @throws ThicksetError output_exists, output_foreign */
+export function checkSweepFolder(folder: string, { overwrite, resume }: SweepFolderChoice): void {
   if (!existsSync(folder)) return;
   const entries = readdirSync(folder).filter(
-    (name) => !name.startsWith(PARTIAL_PREFIX) && !name.startsWith(LOCK_NAME),
+    (name) => !name.startsWith(PARTIAL_PREFIX) && !name.startsWith(LOCK_NAME) && name !== SLURM_FOLDER,
   );
   if (entries.length === 0) return;
   const journal = readIfThere(join(folder, JOURNAL_NAME));

@@ -60,8 +60,16 @@ export interface Started {
 }
 
 /** `thickset ARGS`, to be stopped by the caller. */
-export function startCli(args: readonly string[], cwd: string): Started {
-  const child = spawn(process.execPath, [CLI, ...args], { cwd, stdio: 'ignore' });
+export function startCli(
+  args: readonly string[],
+  cwd: string,
+  env: Readonly<Record<string, string>> = {},
+): Started {
+  const child = spawn(process.execPath, [CLI, ...args], {
+    cwd,
+    env: { ...process.env, ...env },
+    stdio: 'ignore',
+  });
   const ended = new Promise<number | null>((resolve) => child.on('close', (code) => resolve(code)));
   const until = async (seen: () => boolean) => {
     while (!seen()) {
