@@ -14,6 +14,7 @@ import type { BatchTally } from './batch-tally.js';
 import { COSINE_BINS, cosineBin } from './deep-grid.js';
 import { Flight } from './deep-flight.js';
 import { DepthScores } from './deep-depths.js';
+import { Lateral } from './deep-lateral.js';
 import { FaceScores } from './deep-faces.js';
 import { depthToFar, depthToFront } from './deep-paths.js';
 import { DEEP_LENGTH, DEEPEST, DeepPhotons } from './deep-photons.js';
@@ -57,6 +58,7 @@ class DeepRun {
   private readonly front: FaceScores;
   private readonly depths: DepthScores | null;
   private readonly points: PointScores | null;
+  private readonly lateral: Lateral | null;
   private readonly waiting = new DeepPhotons();
   /** The photon in hand, one that sets out, and an electron's direction. */
   private readonly photon = new Float64Array(DEEP_LENGTH);
@@ -79,6 +81,7 @@ class DeepRun {
     this.front = new FaceScores(problem, site.random, this.scores, false);
     this.depths = dose.depthBins > 0 ? new DepthScores(problem, site.random, this.scores) : null;
     this.points = plan.points === null ? null : new PointScores(problem, plan.points, site, this.scores);
+    this.lateral = plan.points === null ? null : new Lateral(plan.points.lateral);
     const { figures } = plan.constants;
     this.uncollidedKeV = figures[FIGURE.transmittedEnergy] + figures[FIGURE.reflectedEnergy];
   }
@@ -107,7 +110,8 @@ class DeepRun {
     const { grid, importance } = this.problem.deep!.plan;
     const group = grid.groupOfBucket[bucketOf(photon[ENERGY])];
     const at = (this.slice * grid.groups + group) * COSINE_BINS + cosineBin(photon[W]);
-    const worth = photon[WEIGHT] * importance[at];
+    let worth = photon[WEIGHT] * importance[at];
+    if (this.lateral !== null) worth *= this.lateral.ofFlight(photon);
     let copies = 1;
     if (worth > SPLIT_ABOVE) {
       copies = Math.min(MOST_COPIES, Math.floor(worth + nextUniform(this.site.random)));
@@ -205,7 +209,8 @@ class DeepRun {
   private early(weight: number, energyKeV: number): number {
     const { grid, topImportance } = this.problem.deep!.plan;
     const group = grid.groupOfBucket[bucketOf(energyKeV)];
-    const worth = weight * topImportance[this.slice * grid.groups + group];
+    let worth = weight * topImportance[this.slice * grid.groups + group];
+    if (this.lateral !== null) worth *= this.lateral.at(this.photon[X], this.photon[Y], this.photon[Z]);
     if (worth >= EARLY_CHANCE_BELOW) return weight;
     const chance = worth / EARLY_CHANCE_BELOW;
     return nextUniform(this.site.random) < chance ? weight / chance : 0;

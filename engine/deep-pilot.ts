@@ -25,7 +25,7 @@ export interface DeepPlan {
   readonly grid: DeepGrid;
   /** Worth of a photon in flight by what its next collision brings; the mean over source photons is 1. */
   readonly importance: Float64Array;
-  /** Largest importance of any direction, by (slice, group). */
+  /** Largest worth in any direction, with what the photon scores by leaving, by (slice, group). */
   readonly topImportance: Float64Array;
   /** Where flights end; see deep-flight.ts. */
   readonly flights: Float64Array;
@@ -68,7 +68,11 @@ export function makeDeepPlan(problem: Problem, tally: Tally): DeepPlan {
   const mean = dot(first, worth.collision) + dot(born, worth.flight);
   const scale = mean > 0 ? 1 / mean : 0;
   const importance = shared(worth.flight.map((value) => value * scale));
-  const topImportance = keepAlive(grid, importance);
+  keepAlive(grid, importance);
+  const topImportance = topOf(
+    grid,
+    worth.whole.map((value) => value * scale),
+  );
   return {
     grid,
     importance,
@@ -178,18 +182,24 @@ function addDepths(
   }
 }
 
-/** Raises what is worth next to nothing, and gives back the largest importance by (slice, group). */
-function keepAlive(grid: DeepGrid, importance: Float64Array): Float64Array {
-  const tops = sharedDoubles(grid.slices * grid.groups);
+/** Raises what is worth next to nothing. */
+function keepAlive(grid: DeepGrid, importance: Float64Array): void {
   const perSlice = grid.groups * COSINE_BINS;
   for (let i = 0; i < grid.slices; i++) {
     const slice = importance.subarray(i * perSlice, (i + 1) * perSlice);
     const least = LEAST_IMPORTANCE * slice.reduce((top, value) => Math.max(top, value), 0);
-    for (let k = 0; k < perSlice; k++) {
-      slice[k] = Math.max(slice[k], least);
-      const group = i * grid.groups + Math.floor(k / COSINE_BINS);
-      tops[group] = Math.max(tops[group], slice[k]);
-    }
+    for (let k = 0; k < perSlice; k++) slice[k] = Math.max(slice[k], least);
   }
+}
+
+/** Largest worth by (slice, group), kept above nothing likewise. */
+function topOf(grid: DeepGrid, worth: Float64Array): Float64Array {
+  const raised = Float64Array.from(worth);
+  keepAlive(grid, raised);
+  const tops = sharedDoubles(grid.slices * grid.groups);
+  raised.forEach((value, k) => {
+    const group = Math.floor(k / COSINE_BINS);
+    tops[group] = Math.max(tops[group], value);
+  });
   return tops;
 }

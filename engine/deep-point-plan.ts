@@ -1,6 +1,7 @@
 /** What scoring at dose points needs compiled. */
 import { COHERENT_LENGTH } from './physics/coherent.js';
 import { coherentNorms, coherentRows } from './physics/angular-density.js';
+import { makeLateralPlan } from './deep-lateral-plan.js';
 import type { DeepPlan } from './deep-pilot.js';
 import type { PointPlan } from './deep-points.js';
 import { topEnergyKeV } from './emission.js';
@@ -31,6 +32,7 @@ export function makePointPlan(
     smallScore: shared(
       points.map((point, p) => SMALL_SHARE * expectedScore(problem, point, p, plan, constants)),
     ),
+    lateral: makeLateralPlan(problem, points, plan),
     ...normsOfSlots(problem),
   };
 }

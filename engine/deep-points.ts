@@ -3,6 +3,7 @@
  * its outcome times exp(−τ)/r², for each process that can happen there and with the energy the photon would have.
  */
 import { U, V, W, X, Y, Z } from '../geometry/index.js';
+import type { LateralPlan } from './deep-lateral.js';
 import { depthToFar, depthToFront } from './deep-paths.js';
 import type { DeepScores } from './deep-scores.js';
 import { cellOf } from './energy-grid.js';
@@ -21,6 +22,7 @@ export interface PointPlan {
   readonly offsetCm: Float64Array;
   /** Contributions to the leading dose below it are left to chance, by point. */
   readonly smallScore: Float64Array;
+  readonly lateral: LateralPlan;
   readonly coherentNorms: Float64Array;
   /** First norm of each slot. */
   readonly normBase: Int32Array;

@@ -142,6 +142,8 @@ export interface Response {
 export interface Worth {
   readonly collision: Float64Array;
   readonly flight: Float64Array;
+  /** Of a photon in flight, with what it scores by leaving. */
+  readonly whole: Float64Array;
 }
 
 /** @param matrices outcome of collisions, by slice */
@@ -152,9 +154,8 @@ export function sweepBackward(
 ): Worth {
   const { groups, slices } = grid;
   const length = slices * groups * COSINE_BINS;
-  const worth = { collision: new Float64Array(length), flight: new Float64Array(length) };
-  /** Of a photon in flight, leaving included. */
   const whole = new Float64Array(length);
+  const worth = { collision: new Float64Array(length), flight: new Float64Array(length), whole };
   for (let group = 0; group < groups; group++) {
     const flights = new Flights(grid, group);
     const leaving = worthOfLeaving(grid, flights, response, group);

@@ -43,6 +43,8 @@ const MAX_HISTORIES = 2e8;
 const ROUGH_ERROR = 0.05;
 /** Standard error of the thickness that is aimed at by default, as a share of it: its 95 % interval is 1.6 % wide. */
 const THICKNESS_ERROR = 0.004;
+/** An error of no importance even if it were several times larger. */
+const NEGLIGIBLE_ERROR = 1e-3;
 /** A dose below this share of its limit need not be known well. */
 const FAR_BELOW = 0.3;
 const LEAST_ERROR = 0.001;
@@ -54,7 +56,9 @@ const MOST_PATHS = 60;
 /** A dose that falls less than this in ln over three mean free paths, at twelve or more, falls no further. */
 const PLATEAU_FALL = 0.05;
 const PLATEAU_STEP = 3;
-const PLATEAU_FROM = 12;
+const PLATEAU_FROM = 8;
+/** A dose that falls less than this share of the attenuation between two trials may be on a plateau. */
+const SLOW_FALL = 0.2;
 
 export class ThicknessSearch {
   readonly trials: Trial[] = [];
@@ -160,9 +164,20 @@ export class ThicknessSearch {
     const enough = this.trials.filter((trial) => trial.excess.log <= 0).map((trial) => trial.thicknessCm);
     const low = Math.max(0, ...tooThin);
     const high = Math.min(limit, ...enough);
-    const aim = thicknessCm + (Number.isFinite(excess.log) ? excess.log / perCm : 5 / this.leastPerCm);
+    const aim =
+      thicknessCm +
+      (Number.isFinite(excess.log) ? excess.log / perCm : 5 / this.leastPerCm) +
+      (this.isSlow() ? PLATEAU_FROM / this.leastPerCm : 0);
     const inside = high > low ? Math.max(low, Math.min(high, aim)) : aim;
     return Math.min(limit, Math.max(inside, 0.01 / this.leastPerCm));
+  }
+
+  /** Whether the last step brought far less than the attenuation promises. */
+  private isSlow(): boolean {
+    const [before, last] = this.trials.slice(-2);
+    const stepCm = last.thicknessCm - before.thicknessCm;
+    const fall = before.excess.log - last.excess.log;
+    return before.thicknessCm > 0 && stepCm > 0 && fall < SLOW_FALL * this.leastPerCm * stepCm;
   }
 
   private isHopeless(last: Trial): boolean {
@@ -179,9 +194,13 @@ export class ThicknessSearch {
   }
 }
 
-/** A dose near its limit must be reliable, with all its histories. */
-export function isSettled({ value, goal, isReliable }: GoalState): boolean {
-  return isReliable || (value !== null && value < FAR_BELOW * goal.limit);
+/**
+ * Whether a dose is known well enough to judge by: its error can be relied on, or is so small that it does not matter, or
+ * the dose is far below its limit.
+ */
+export function isSettled({ value, stdError, goal, isReliable }: GoalState): boolean {
+  if (isReliable || value === null) return true;
+  return stdError < NEGLIGIBLE_ERROR * value || value < FAR_BELOW * goal.limit;
 }
 
 /** Least attenuation coefficient of a layer at any energy up to the highest of the source. */
