@@ -150,7 +150,7 @@ describe('a point just behind the far face', () => {
         points: [point('p', 2.5 + 0.5)],
         seed: 'dose-points disc',
       },
-      150_000,
+      60_000,
     );
     const plane = figureIn(disc, 'air_kerma');
     const atPoint = figureIn(disc, 'air_kerma', 'p');
@@ -271,7 +271,7 @@ describe('next events', () => {
       points,
       seed: `dose-points rings ${given.what}`,
     };
-    const deep = playDeep(setup, 15_000);
+    const deep = playDeep(setup, 10_000);
     const analog = analogRings(setup, planeCm, BOUNDS, 40_000);
     analog.forEach((ring, r) => {
       const atPoints = PLACES.map((_, i) => figureIn(deep, 'air_kerma', `${r}/${i}`));
