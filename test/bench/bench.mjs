@@ -117,7 +117,8 @@ async function processes() {
   const simulator = new Simulator(1);
   for (const benchCase of CASES) {
     const rate = async (physics) =>
-      (await play(simulator, setupText(benchCase, physics, Math.round(HISTORIES / 3)))).timings.historiesPerSecond;
+      (await play(simulator, setupText(benchCase, physics, Math.round(HISTORIES / 3)))).timings
+        .historiesPerSecond;
     const costs = [];
     for (const process of PROCESSES) {
       await rate(process);
