@@ -52,17 +52,23 @@ describe('help', () => {
       Monte Carlo photon transport through stacks of layers, 1 keV to 20 MeV
 
       Options:
-        -V, --version               output the version number
-        -h, --help                  display help for command
+        -V, --version                 output the version number
+        -h, --help                    display help for command
 
       Commands:
-        run [options] <setup>       run a setup and write its result
-        summary [options] <folder>  show the figures and spectra of a finished run
-        material [options] <name>   show composition, attenuation coefficients and
-                                    narrow-beam thicknesses of a material
-        nuclide [options] [name]    show half-life, gamma, X-ray and annihilation
-                                    lines of a nuclide; without a name, list all
-        help [command]              display help for command
+        run [options] <setup>         run a setup and write its result
+        sweep [options] <sweep>       run a setup at many points and write one table
+                                      of them
+        size [options] <setup>        find the thickness of a layer that brings doses
+                                      under their limits
+        merge [options] <folders...>  put the shards of a run or sweep together
+        summary [options] <folder>    show the figures and spectra of a finished run,
+                                      or the points of a sweep, also while it runs
+        material [options] <name>     show composition, attenuation coefficients and
+                                      narrow-beam thicknesses of a material
+        nuclide [options] [name]      show half-life, gamma, X-ray and annihilation
+                                      lines of a nuclide; without a name, list all
+        help [command]                display help for command
 
       Exit codes:
           0  done
