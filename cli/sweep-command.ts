@@ -1,7 +1,7 @@
 /** `thickset sweep`: many points of one setup in, one table out. */
 import { availableParallelism } from 'node:os';
 import { Option, type Command } from 'commander';
-import { Simulator, type Shard, type Warning } from '../engine/index.js';
+import { EngineError, Simulator, type Shard, type Warning } from '../engine/index.js';
 import {
   parseJobTime,
   parseMemory,
@@ -11,6 +11,7 @@ import {
   parseThreads,
   parseTime,
 } from './command-options.js';
+import { fromEngine } from './engine-errors.js';
 import { errors, EXIT_CODES } from './errors.js';
 import { onInterrupt } from './interrupt.js';
 import { calibrate, printDryRun } from './sweep/dry-run.js';
@@ -133,6 +134,8 @@ async function play(
       onProgress: progress?.update,
       warn: (message) => printWarnings([{ code: 'journal', message, count: 1 }], options),
     });
+  } catch (cause) {
+    throw cause instanceof EngineError ? fromEngine(cause) : cause;
   } finally {
     progress?.clear();
     await simulator.close();

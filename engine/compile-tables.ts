@@ -22,9 +22,12 @@ import { makeLocalCutoffs, RADIATION_STEPS, type LocalCutoffs } from './local-cu
 import { CELL_LENGTH, sharedDoubles, sharedInts } from './problem.js';
 import { MAX_ENERGY_KEV, type Physics } from './setup.js';
 
-/** A problem's tables take about 1 MB; these bounds keep an evening's sweep below a tenth of its memory limit. */
+/**
+ * A problem's tables take about 1 MB, half of it for radiation. A scan of all energies has 30 of them per material;
+ * these bounds keep those of a few materials, and a sweep of very many below a third of its memory limit.
+ */
 const TABLES_BYTES = 48e6;
-const RADIATION_BYTES = 8e6;
+const RADIATION_BYTES = 48e6;
 
 export interface Tables extends ScatteringTables, Doppler, Channels, LocalCutoffs {
   readonly grid: EnergyGrid;
@@ -35,6 +38,8 @@ export interface Tables extends ScatteringTables, Doppler, Channels, LocalCutoff
   readonly densityOfSlot: Float64Array;
 }
 
+type Radiation = Pick<Tables, 'bremsstrahlung' | 'silent' | 'silentBase'>;
+
 type SharedTables = Omit<Tables, 'cells' | 'bremsstrahlung' | 'silent' | 'silentBase' | 'densityOfSlot'> & {
   /** Cells of materials of density 1. */
   readonly massCells: Float64Array;
@@ -43,7 +48,9 @@ type SharedTables = Omit<Tables, 'cells' | 'bremsstrahlung' | 'silent' | 'silent
 };
 
 const sharedTables = new BoundedCache<SharedTables>(TABLES_BYTES);
-const radiation = new BoundedCache<readonly BremsstrahlungTables[]>(RADIATION_BYTES);
+const slotRadiation = new BoundedCache<readonly BremsstrahlungTables[]>(RADIATION_BYTES);
+/** The same tables once more, with what is put together of those of all slots. */
+const stackRadiation = new BoundedCache<Radiation>(RADIATION_BYTES);
 
 /** The tables of slots up to `topKeV`. */
 export function tablesOf(slots: readonly Slot[], topKeV: number, physics: Physics): Tables {
@@ -58,15 +65,16 @@ export function tablesOf(slots: readonly Slot[], topKeV: number, physics: Physic
     last.key = densities.join();
     last.cells = atDensities(massCells, densities);
   }
-  const bremsstrahlung = slots.map((slot) =>
-    radiation.get(`${kind};${slot.key}`, () => makeRadiation(slot, tableTopKeV, physics)),
-  );
   return {
     ...shared,
     cells: last.cells,
     densityOfSlot: Float64Array.from(densities),
-    bremsstrahlung,
-    ...joinSilent(bremsstrahlung),
+    ...stackRadiation.get(`${kind};${slots.map(({ key }) => key).join('|')}`, () => {
+      const bremsstrahlung = slots.map((slot) =>
+        slotRadiation.get(`${kind};${slot.key}`, () => makeRadiation(slot, tableTopKeV, physics)),
+      );
+      return { bremsstrahlung, ...joinSilent(bremsstrahlung) };
+    }),
   };
 }
 

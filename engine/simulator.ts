@@ -3,6 +3,7 @@
  * ones before have no batch left to give out: all threads are busy whether runs are long or short.
  */
 import type { BatchTask } from './batch-worker.js';
+import { EngineError } from './errors.js';
 import type { Run } from './run.js';
 import { WorkerPool } from './worker-pool.js';
 
@@ -30,7 +31,7 @@ export class Simulator {
     this.threads = this.pool.threads;
   }
 
-  /** Plays all runs of a list. Rejects when one of its functions throws. */
+  /** Plays all runs of a list. Rejects when one of its functions throws, or when no thread can be kept alive. */
   async play(list: Playlist): Promise<void> {
     const desk = new Desk(list);
     const lanes = Array.from({ length: TASKS_PER_THREAD * this.threads }, () => this.lane(desk));
@@ -55,6 +56,8 @@ export class Simulator {
         const results = await this.pool.run(task);
         run.give(task, results);
       } catch (cause) {
+        // What fails one batch fails its run; without threads there is no run to go on with.
+        if (this.pool.isBroken) throw workersFailed(cause);
         run.fail(task, cause);
       }
       desk.taken(run);
@@ -65,6 +68,11 @@ export class Simulator {
   async close(): Promise<void> {
     await this.pool.close();
   }
+}
+
+function workersFailed(cause: unknown): EngineError {
+  const why = cause instanceof Error ? cause.message : String(cause);
+  return new EngineError('worker_failed', `the worker threads failed: ${why}`, { cause });
 }
 
 /** Hands out the tasks of the runs under way, and begins the next run where there are none. */

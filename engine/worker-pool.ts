@@ -8,8 +8,9 @@ import type { BatchResult } from './run-sums.js';
 export class WorkerPool {
   readonly threads: number;
   private readonly pool: Piscina;
-  /** Rejects when a thread cannot be kept alive, which the pool tells apart from a failed task. */
-  private readonly broken: Promise<never>;
+  /** Ends the waiting for tasks in hand when a thread cannot be kept alive, which the pool tells of by itself. */
+  private readonly waiting = new Set<(cause: unknown) => void>();
+  private broken: { readonly cause: unknown } | null = null;
 
   /** @param threads worker threads; default: the processors this process may use */
   constructor(threads?: number) {
@@ -21,14 +22,31 @@ export class WorkerPool {
       maxThreads: this.threads,
       concurrentTasksPerWorker: 1,
     });
-    this.broken = new Promise((_, reject) => this.pool.on('error', reject));
-    // Nobody may be waiting when it happens.
-    this.broken.catch(() => undefined);
+    this.pool.on('error', (cause: unknown) => {
+      this.broken = { cause };
+      for (const reject of this.waiting) reject(cause);
+    });
+  }
+
+  /** A thread could not be kept alive: nothing more can be played. */
+  get isBroken(): boolean {
+    return this.broken !== null;
   }
 
   /** Plays the batches of a task in one of the threads. Rejects when the thread fails or dies. */
-  run(task: BatchTask): Promise<BatchResult[]> {
-    return Promise.race([this.pool.run(task) as Promise<BatchResult[]>, this.broken]);
+  async run(task: BatchTask): Promise<BatchResult[]> {
+    if (this.broken !== null) throw this.broken.cause;
+    let giveUp: (cause: unknown) => void = () => undefined;
+    try {
+      // No race against a promise that lasts: it would hold on to the results of every task.
+      return await new Promise<BatchResult[]>((resolve, reject) => {
+        giveUp = reject;
+        this.waiting.add(giveUp);
+        (this.pool.run(task) as Promise<BatchResult[]>).then(resolve, reject);
+      });
+    } finally {
+      this.waiting.delete(giveUp);
+    }
   }
 
   /** Ends the threads; tasks still under way are dropped. */

@@ -1,3 +1,5 @@
+import { setFlagsFromString } from 'node:v8';
+import { runInNewContext } from 'node:vm';
 import { afterAll, expect, test } from 'vitest';
 import { Run, simulate, Simulator, type Setup } from '../../engine/index.js';
 import { ALL, slabSetup } from './slab-run.js';
@@ -102,4 +104,23 @@ test('an error in what feeds the threads ends the play with that error', async (
     },
   });
   await expect(play).rejects.toThrow('the disk is full');
+});
+
+test('the results of batches that are merged are not held on to', async () => {
+  setFlagsFromString('--expose-gc');
+  const collect = runInNewContext('gc') as () => void;
+  const results: WeakRef<object>[] = [];
+  const run = new Run(slab(0.1, 300_000));
+  const give = run.give.bind(run);
+  run.give = (task, batches) => {
+    for (const { cellSum } of batches) results.push(new WeakRef(cellSum));
+    give(task, batches);
+  };
+  let next: Run | null = run;
+  await simulator.play({ next: () => [next, (next = null)][0] });
+  await new Promise((resolve) => setTimeout(resolve, 50));
+  collect();
+  expect(results).toHaveLength(30);
+  // A thread may keep what it gave back last.
+  expect(results.filter((ref) => ref.deref() !== undefined).length).toBeLessThanOrEqual(4);
 });
