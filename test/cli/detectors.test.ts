@@ -158,7 +158,8 @@ describe('a run with a nuclide, an activity and two detectors', () => {
     const of = (feature: string) =>
       result.peaks.filter((row) => row.feature === feature && row.layer === 'thick');
     expect(of('full_energy')).toMatchObject([{ line_keV: 661.6553, status: 'seen' }]);
-    expect(of('compton_edge')).toMatchObject([{ status: 'seen' }]);
+    // Behind another crystal and smeared, the steepest fall is no longer where kinematics put the edge: not told.
+    expect(of('compton_edge')).toMatchObject([{ status: 'unresolved', mean: null }]);
     expect(of('peak_to_compton')).toMatchObject([{ status: 'unresolved', mean: null }]);
     expect(of('single_escape')).toEqual([]);
   });
