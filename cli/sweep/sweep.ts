@@ -1,6 +1,7 @@
 /** A sweep: its points, each a checked setup with a seed of its own. */
 import { createHash } from 'node:crypto';
 import type { Setup } from '../../engine/index.js';
+import type { Material } from '../../materials/index.js';
 import { checkSetup, type CheckedSetup } from '../setup-reader.js';
 import { setupWarnings } from '../setup/warnings.js';
 import type { BaseSetup } from './base-setup.js';
@@ -28,6 +29,9 @@ export interface SweepParts {
   readonly spectra: boolean;
 }
 
+/** Materials kept: enough for any list of them, few enough where a density takes a new value at each point. */
+const MOST_MATERIALS = 200;
+
 /** Long enough that two of 100 000 points share a seed less than once in a billion sweeps (birthday bound). */
 const SEED_DIGITS = 16;
 
@@ -41,6 +45,7 @@ export class Sweep implements SweepParts {
   readonly precision: Precision | null;
   readonly timeLimitS: number | null;
   readonly spectra: boolean;
+  private readonly materials = new Map<string, Material>();
 
   constructor(parts: SweepParts) {
     this.title = parts.title;
@@ -92,13 +97,28 @@ export class Sweep implements SweepParts {
     );
     const { fileName, directory } = this.base;
     const checked = checkSetup(this.withPrecision(raw), { fileName, directory });
-    const setup = { ...this.withAim(checked.setup), seed: this.seedOf(point) };
+    const { stack } = checked.setup;
+    const setup = {
+      ...this.withAim(checked.setup),
+      stack: stack.map((layer) => ({ ...layer, material: layer.material && this.known(layer.material) })),
+      seed: this.seedOf(point),
+    };
     if (setup.run.timeLimitS === null) return { ...checked, setup };
     // A limit on each point would make their figures depend on the speed of the machine.
     return {
       setup: { ...setup, run: { ...setup.run, timeLimitS: null } },
       warnings: [...checked.warnings, setupWarnings.pointTimeLimit()],
     };
+  }
+
+  /** One object for each material: what is worked out for it, such as ranges of electrons, is kept with it. */
+  private known(material: Material): Material {
+    const key = JSON.stringify(material);
+    const known = this.materials.get(key);
+    if (known !== undefined) return known;
+    if (this.materials.size >= MOST_MATERIALS) this.materials.clear();
+    this.materials.set(key, material);
+    return material;
   }
 
   /** A precision that names its quantity is checked as a part of the setup. */
