@@ -14,4 +14,6 @@ for (const file of readdirSync('materials/data')) {
 }
 const { setupJsonSchema } = await import('./dist/cli/setup-schema.js');
 writeFileSync('dist/setup.schema.json', `${JSON.stringify(setupJsonSchema(), null, 2)}\n`);
+const { sweepJsonSchema } = await import('./dist/cli/sweep/sweep-schema.js');
+writeFileSync('dist/sweep.schema.json', `${JSON.stringify(sweepJsonSchema(), null, 2)}\n`);
 chmodSync('dist/cli/main.js', 0o755);

@@ -7,6 +7,7 @@ export {
   curveSetup,
   simulate,
   simulateEfficiency,
+  Simulator,
   type EngineErrorCode,
 } from '../engine/index.js';
 export type * from '../engine/index.js';
@@ -24,3 +25,6 @@ export type { CurveFit } from './efficiency/fit-curve.js';
 export { readManifest, readResult, writeResult, type StoredResult } from './result/stored-result.js';
 export { checkResultFolder } from './result/result-folder.js';
 export type { Manifest, ManifestLayer, ManifestSource, ManifestUntil, RunRecord } from './result/manifest.js';
+export { readSweepFile, type SweepFile } from './sweep/sweep-reader.js';
+export { runSweep, type SweepOutcome } from './sweep/run-sweep.js';
+export type { SweepRunOptions } from './sweep/sweep-runner.js';

@@ -83,3 +83,8 @@ export const sweepSchema = z
 /** A sweep file after every key has been read by itself. */
 export type SweepKeys = z.output<typeof sweepSchema>;
 export type RangeKeys = z.output<typeof rangeSchema>;
+
+/** JSON Schema (draft 7, the one editors know best) of sweep files; what stands under base is not looked into. */
+export function sweepJsonSchema(): Record<string, unknown> {
+  return { ...z.toJSONSchema(sweepSchema, { io: 'input', target: 'draft-7' }) };
+}

@@ -1,10 +1,13 @@
 import * as fs from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
+import { Ajv } from 'ajv';
+import { parse } from 'yaml';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { latinShares } from '../../cli/sweep/hypercube.js';
 import { parsePath, resolvePath, withValue } from '../../cli/sweep/parameter-path.js';
 import { readSweepFile } from '../../cli/sweep/sweep-reader.js';
+import { sweepJsonSchema } from '../../cli/sweep/sweep-schema.js';
 import type { Sweep } from '../../cli/sweep/sweep.js';
 import { canonicalText, columnOf } from '../../cli/sweep/values.js';
 
@@ -159,6 +162,32 @@ describe('the seed of a point', () => {
   test('follows from the seed of the sweep', () => {
     expect(read(`seed: a\n${small}`).seedOf(0)).toMatch(/^a\/[0-9a-f]{16}$/);
     expect(read(`seed: b\n${small}`).seedOf(0)).not.toBe(read(`seed: a\n${small}`).seedOf(0));
+  });
+});
+
+describe('the example', () => {
+  const text = fs.readFileSync('cli/examples/sweep/shield.yaml', 'utf8');
+  const schema = sweepJsonSchema();
+
+  test('is a sweep, and shows every key there is', () => {
+    const { sweep } = readSweepFile('cli/examples/sweep/shield.yaml');
+    expect(sweep.points).toBe(16);
+    expect(sweep.setupOf(15).setup.stack[0]).toMatchObject({ thicknessCm: 5, material: { name: 'steel' } });
+    const keys = Object.keys(schema.properties as object);
+    expect(keys.length).toBeGreaterThan(8);
+    for (const key of keys) expect(text).toMatch(new RegExp(`^(# )?${key}:`, 'm'));
+  });
+
+  test('is accepted by the JSON Schema, which refuses what is no sweep', () => {
+    const validate = new Ajv({ strict: true, allowUnionTypes: true, strictRequired: false }).compile(schema);
+    expect(validate(parse(text)), JSON.stringify(validate.errors)).toBe(true);
+    for (const bad of [
+      'base: a.yaml',
+      'base: a.yaml\nvary: {x: 3}',
+      'base: a.yaml\nvary: {x: [3]}\ncombine: all',
+    ]) {
+      expect(validate(parse(bad)), bad).toBe(false);
+    }
   });
 });
 
