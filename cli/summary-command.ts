@@ -6,7 +6,7 @@ import { existsSync } from 'node:fs';
 import { join } from 'node:path';
 import { Option, type Command } from 'commander';
 import { replaceFile } from './checkpoint/durable-file.js';
-import { JOURNAL_NAME, SHARD_NAME } from './checkpoint/names.js';
+import { JOURNAL_NAME, SHARD_NAME, SLURM_FOLDER } from './checkpoint/names.js';
 import { parseColumns } from './command-options.js';
 import { errors } from './errors.js';
 import type { Analysis } from './response/analysis.js';
@@ -54,7 +54,7 @@ export function registerSummaryCommand(program: Command): void {
 }
 
 async function summaryCommand(folder: string, options: SummaryOptions): Promise<void> {
-  if (existsSync(join(folder, JOURNAL_NAME))) {
+  if ([JOURNAL_NAME, SLURM_FOLDER].some((name) => existsSync(join(folder, name)))) {
     const { printSweep, viewSweep } = await import('./sweep/sweep-summary.js');
     return printSweep(viewSweep(folder), folder, options);
   }

@@ -1,6 +1,6 @@
 /** The scripts of the two jobs: an array of shards, and the merge that waits for it. */
 import { join, resolve } from 'node:path';
-import { SLURM_FOLDER } from '../sweep/sweep-folder.js';
+import { SLURM_FOLDER } from '../checkpoint/names.js';
 
 export interface SlurmOptions {
   readonly shards: number;

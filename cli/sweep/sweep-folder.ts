@@ -9,7 +9,7 @@ import { decodeState, encodeState, type RunState, type Shard, type Spectrum } fr
 import { changesBetween } from '../checkpoint/changes.js';
 import { makeFolders, PARTIAL_PREFIX, readIfThere, replaceFile } from '../checkpoint/durable-file.js';
 import { LOCK_NAME, lockFolder, type FolderLock } from '../checkpoint/folder-lock.js';
-import { JOURNAL_NAME } from '../checkpoint/names.js';
+import { JOURNAL_NAME, SLURM_FOLDER } from '../checkpoint/names.js';
 import { removePartial } from '../checkpoint/run-folder.js';
 import { errors } from '../errors.js';
 import { MANIFEST_NAME } from '../result/manifest.js';
@@ -22,8 +22,6 @@ import { readSweepLog, type SweepLog } from './sweep-log.js';
 export const POINTS_NAME = 'points.arrow';
 const SPECTRA_FOLDER = 'spectra';
 const STATES_FOLDER = 'states';
-/** Shards and scripts of a sweep on a cluster; the merged sweep stands around it. */
-export const SLURM_FOLDER = 'slurm';
 const OWN_NAMES: ReadonlySet<string> = new Set([
   JOURNAL_NAME,
   POINTS_NAME,

@@ -1,5 +1,8 @@
 /** `thickset summary` of a sweep: from its journal alone, whether it is finished or running. */
+import { existsSync, readdirSync } from 'node:fs';
+import { join } from 'node:path';
 import { isLocked } from '../checkpoint/folder-lock.js';
+import { SLURM_FOLDER } from '../checkpoint/names.js';
 import { errors } from '../errors.js';
 import { prepareWidths } from '../text/display-width.js';
 import { makeStyle } from '../text/style.js';
@@ -12,9 +15,24 @@ import { sweepLines, type SweepView } from './sweep-text.js';
 export function viewSweep(folder: string): SweepView {
   const running = isLocked(folder);
   const log = readSweepLog(folder);
-  if (log === null) throw errors.resultMissing(folder);
+  if (log === null) return viewShards(folder);
   const { begin, points, end, elapsedS } = log;
   return { begin, points, elapsedS, state: running ? 'running' : end ? 'ended' : 'stopped' };
+}
+
+/** A sweep on a cluster before it is merged: what its shards have so far. */
+function viewShards(folder: string): SweepView {
+  const parts = join(folder, SLURM_FOLDER);
+  const names = existsSync(parts) ? readdirSync(parts).filter((name) => /^shard-\d+$/.test(name)) : [];
+  const shards = names.map((name) => join(parts, name));
+  const logs = shards.flatMap((shard) => readSweepLog(shard) ?? []);
+  if (logs.length === 0) throw errors.resultMissing(folder);
+  return {
+    begin: { ...logs[0].begin, shard: null },
+    points: new Map(logs.flatMap(({ points }) => [...points])),
+    elapsedS: Math.max(...logs.map(({ elapsedS }) => elapsedS)),
+    state: shards.some(isLocked) ? 'running' : 'stopped',
+  };
 }
 
 export async function printSweep(

@@ -3,7 +3,7 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { arrowFiles, runKilled, startCli } from './kills.js';
-import { runCli } from './run-cli.js';
+import { runCli, runShell } from './run-cli.js';
 
 const SETUP = `title: Crystal
 source: {kind: point, distance: 10 cm, energy: 661.7 keV}
@@ -121,6 +121,22 @@ test('resuming a finished run plays nothing and shows its result', async () => {
   const other = await thickset('run', 'setup.yaml', '--out', 'whole', '--resume', '--seed', 'b');
   expect(other.stderr).toContain('seed was thickset, is b');
 });
+
+test.skipIf(process.platform === 'win32')(
+  'a full disk costs a run neither its course nor its figures, and leaves no half-made folder',
+  async () => {
+    // The limit on the size of files, 4 kB, fails a write like a full disk does.
+    const command = 'ulimit -f 8; exec $THICKSET run setup.yaml --out full --checkpoint "50 ms" --json';
+    const { code, stdout, stderr } = await runShell(command, { cwd: folder });
+    expect(code).toBe(4);
+    expect(stderr).toBe(
+      'warning: the state of the run is not saved: full: no space left; the run goes on\n' +
+        'full: no space left; free some space and run again\n',
+    );
+    expect(JSON.parse(stdout)).toMatchObject({ out: null, histories: 1.5e6 });
+    expect(fs.existsSync(join(folder, 'full'))).toBe(false);
+  },
+);
 
 test('a folder in which a process works is refused, one whose process was killed is not', async () => {
   const args = ['run', 'setup.yaml', '--out', 'held', '--histories', '1e8', '--quiet'];

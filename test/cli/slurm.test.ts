@@ -245,6 +245,10 @@ describe.skipIf(missingPrograms.length > 0)(`a sweep on a Slurm of one node${why
     await until(() => sizeOf(journal) > 0);
     child.kill('SIGKILL');
     await ended;
+    const live = await runCli(['summary', 'outlived'], { cwd: folder });
+    expect(live.stdout).toMatch(
+      /^Shielded crystal\n12 points: .*\n(running now|stopped: go on with --resume), /,
+    );
     const { jobs } = JSON.parse(fs.readFileSync(inside('outlived', 'slurm', 'plan.json'), 'utf8')) as {
       jobs: { array: string };
     };
