@@ -20,8 +20,7 @@ import { depthToFar, depthToFront } from './deep-paths.js';
 import { DEEP_LENGTH, DEEPEST, DeepPhotons } from './deep-photons.js';
 import { PointScores } from './deep-points.js';
 import { DeepScores } from './deep-scores.js';
-import { head, startDeep } from './deep-source.js';
-import { lineEnergyKeV, pickLine } from './emission.js';
+import { DeepSource, head } from './deep-source.js';
 import { bucketOf, cellOf } from './energy-grid.js';
 import { DEPTH_OFFSET, DEPTH_SHIFT, DEPTH_STEPS } from './local-cutoff.js';
 import { PAIR_THRESHOLD_KEV } from './constants.js';
@@ -53,6 +52,7 @@ export function runDeepBatch(problem: Problem, histories: number, site: Site, ta
 
 class DeepRun {
   readonly scores: DeepScores;
+  private readonly source: DeepSource;
   private readonly flight: Flight;
   private readonly far: FaceScores;
   private readonly front: FaceScores;
@@ -76,6 +76,7 @@ class DeepRun {
     const plan = problem.deep!;
     const { dose } = problem.tally;
     this.scores = new DeepScores(tally);
+    this.source = new DeepSource(problem, plan.plan, site.random, plan.points);
     this.flight = new Flight(problem, site.random);
     this.far = new FaceScores(problem, site.random, this.scores, true);
     this.front = new FaceScores(problem, site.random, this.scores, false);
@@ -88,15 +89,15 @@ class DeepRun {
 
   /** One source photon and all that comes of it. */
   playHistory(): void {
-    const { problem, photon, site } = this;
-    const line = pickLine(problem.emission, site.random);
-    const sourceKeV = lineEnergyKeV(problem.emission, line, site.random);
-    photon[ENERGY] = sourceKeV;
-    photon[WEIGHT] = 1;
-    this.layer = startDeep(problem, site.random, photon);
-    photon[DEEPEST] = photon[Z];
-    this.slice = this.flight.sliceAt(photon[Z], this.layer);
-    this.weigh(photon);
+    const { problem, photon } = this;
+    const start = this.source.next(photon);
+    const sourceKeV = this.source.energyKeV * this.source.lineWeight;
+    if (start >= 0) {
+      this.layer = start;
+      photon[DEEPEST] = photon[Z];
+      this.slice = this.flight.sliceAt(photon[Z], start);
+      this.weigh(photon);
+    }
     for (let layer = this.waiting.take(photon); layer >= 0; layer = this.waiting.take(photon)) {
       this.layer = layer;
       const cell = cellOf(problem.grid, photon[ENERGY]);

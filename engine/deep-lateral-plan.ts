@@ -1,12 +1,13 @@
 /** Worth across the axis, compiled: how much each dose point counts, by a sample of source photons. */
-import { W, Z } from '../geometry/index.js';
+import { W } from '../geometry/index.js';
 import { attenuationPerCm, COSINE_BINS, cosineBin } from './deep-grid.js';
 import { Lateral, type LateralPlan } from './deep-lateral.js';
 import { DEEP_LENGTH } from './deep-photons.js';
 import type { DeepPlan } from './deep-pilot.js';
-import { startDeep } from './deep-source.js';
-import { lineEnergyKeV, pickLine, topEnergyKeV } from './emission.js';
+import { DeepSource } from './deep-source.js';
+import { topEnergyKeV } from './emission.js';
 import { bucketOf } from './energy-grid.js';
+import { ENERGY, WEIGHT } from './photon.js';
 import { sharedDoubles, type Problem } from './problem.js';
 import { seedStream } from './random.js';
 import type { DosePoint } from './setup.js';
@@ -51,24 +52,18 @@ function meanAttenuation(problem: Problem): number {
 }
 
 /** Mean over source photons of their worth times the sight each point has of them. */
-function meanWorths(
-  problem: Problem,
-  lateralPlan: LateralPlan,
-  { grid, importance }: DeepPlan,
-): Float64Array {
+function meanWorths(problem: Problem, lateralPlan: LateralPlan, plan: DeepPlan): Float64Array {
   const lateral = new Lateral(lateralPlan);
   const photon = new Float64Array(DEEP_LENGTH);
   const random = new Float64Array(4);
   seedStream(random, `${problem.seed}/points`, 0);
   const means = new Float64Array(lateralPlan.zCm.length);
+  const source = new DeepSource(problem, plan, random, lateralPlan);
   for (let n = 0; n < SAMPLE; n++) {
-    const line = pickLine(problem.emission, random);
-    const energyKeV = lineEnergyKeV(problem.emission, line, random);
-    startDeep(problem, random, photon);
-    const group = grid.groupOfBucket[bucketOf(energyKeV)];
+    if (source.next(photon) < 0) continue;
     // Sources that points can see are in front: their photons start in the first slice.
-    const worth = importance[group * COSINE_BINS + cosineBin(photon[W])];
-    photon[Z] = 0;
+    const group = plan.grid.groupOfBucket[bucketOf(photon[ENERGY])];
+    const worth = photon[WEIGHT] * plan.importance[group * COSINE_BINS + cosineBin(photon[W])];
     for (let p = 0; p < means.length; p++) means[p] += (worth * lateral.sightOfFlight(p, photon)) / SAMPLE;
   }
   return means;

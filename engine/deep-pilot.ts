@@ -11,6 +11,7 @@ import { doseCoefficient } from '../materials/index.js';
 import { makeFlightTables } from './deep-flight.js';
 import { collisionMatrices } from './deep-collisions.js';
 import { COSINE_BINS, COSINES, makeDeepGrid, type DeepGrid } from './deep-grid.js';
+import { makeStartPlan, type StartPlan } from './deep-start-plan.js';
 import { emittedOf } from './deep-start.js';
 import { sweepBackward, sweepForward, type ForwardFigures, type Response } from './deep-sweep.js';
 import { topEnergyKeV } from './emission.js';
@@ -27,6 +28,8 @@ export interface DeepPlan {
   readonly importance: Float64Array;
   /** Largest worth in any direction, with what the photon scores by leaving, by (slice, group). */
   readonly topImportance: Float64Array;
+  /** How source photons are drawn. */
+  readonly start: StartPlan;
   /** Where flights end; see deep-flight.ts. */
   readonly flights: Float64Array;
   /**
@@ -75,6 +78,7 @@ export function makeDeepPlan(problem: Problem, tally: Tally): DeepPlan {
   );
   return {
     grid,
+    start: makeStartPlan(problem, grid, importance),
     importance,
     topImportance,
     flights: makeFlightTables(grid, worth.collision),

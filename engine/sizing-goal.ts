@@ -88,7 +88,9 @@ export function setupWith(
     tally: {
       energyEdgesKeV: Float64Array.of(0, edges[edges.length - 1]),
       dose: [...new Set(goals.map(({ quantity }) => quantity))],
-      dosePoints: setup.tally.dosePoints.map(moved),
+      dosePoints: setup.tally.dosePoints
+        .filter((point) => goals.some(({ place }) => place === point.name))
+        .map(moved),
       depthProfile: null,
     },
     run: { ...setup.run, until: null, timeLimitS: null, transport: 'deep' },

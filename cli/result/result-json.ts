@@ -4,6 +4,7 @@ import { doseRates } from '../dose-rates.js';
 import { curveJson } from '../efficiency/curve-json.js';
 import type { Analysis } from '../response/analysis.js';
 import { peaksJson, ratesJson, responseJson } from '../response/response-json.js';
+import { CAUTION } from '../text/caution.js';
 import { flawOf, watchedRow } from '../text/convergence.js';
 import { relativeError } from '../text/figure-format.js';
 import type { Manifest } from './manifest.js';
@@ -59,5 +60,6 @@ export function resultObject(
     peaks: analysis === null ? [] : peaksJson(analysis),
     precision: totals.flatMap((row) => precisionOf(row, manifest)),
     not_converged: flawed,
+    caution: CAUTION,
   };
 }

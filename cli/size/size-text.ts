@@ -27,7 +27,7 @@ export function sizeLines(report: SizeReport, style: Style): string[] {
     ...verdictLines(report, style),
     ...tradeOffLines(report, style),
     '',
-    style.note(`${runs} runs in ${formatDuration(wallS)}`),
+    style.note(`${runs === 1 ? '1 run' : `${runs} runs`} in ${formatDuration(wallS)}`),
     ...wrap(`Photons that pass beside a shield of finite size are not counted. ${CAUTION}`, style.width).map(
       style.note,
     ),
@@ -55,7 +55,7 @@ function verdictLines({ answer, task, layer, stepCm }: SizeReport, style: Style)
       const [low, high] = intervalCm as readonly [number, number];
       const last = confirmations[confirmations.length - 1];
       const lines = [
-        `${thicknessText({ mean: found.thicknessCm, stdError: found.stdErrorCm }, style)} meets the limits ` +
+        `${thicknessText({ mean: found.thicknessCm, stdError: found.stdErrorCm }, style)} just meets the limits ` +
           `(95 % interval ${lengthText(low)} to ${lengthText(high)})`,
         style.heading(`${lengthText(roundedCm as number)} rounded up to a step of ${lengthText(stepCm)}`),
       ];

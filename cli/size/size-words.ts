@@ -9,5 +9,6 @@ export interface Thickness {
 
 /** `6.4 mm`, `63.5 cm`: millimetres below a centimetre. */
 export function lengthText(cm: number): string {
+  if (cm === 0) return '0 cm';
   return cm < 1 ? `${formatNumber(cm * 10)} mm` : `${formatNumber(cm)} cm`;
 }
