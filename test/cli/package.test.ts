@@ -74,6 +74,7 @@ test('the package holds built files, data, readme and licence, and nothing else'
     'README.md',
     'dist/materials/data/README.md',
     'dist/setup.schema.json',
+    'dist/sweep.schema.json',
     'package.json',
   ]);
   expect(files).toContain('dist/cli/main.js');
