@@ -39,13 +39,21 @@ function groupsBetween(
 
 /** Groups that a step or a bump needs to be told from its neighbours. */
 const LEAST_GROUPS = 10;
-const EDGE_GROUPS = 80;
+const EDGE_GROUPS = 60;
+/** Groups to either side that the spectrum is averaged over, as few as steady it. */
+const SMOOTHINGS = [0, 1, 2, 3, 4];
+/**
+ * Standard errors of a group in half the step of an edge: fewer, and chance takes a group across the half (1 in 500 at
+ * 60 groups), which would put the edge anywhere.
+ */
+const STEADY_SIGMAS = 4;
 /** What binding and scattering twice may move the edge by. */
 const EDGE_WITHIN = 0.05;
 const BUMP_GROUPS = 40;
 
 /**
- * The Compton edge: where the spectrum has fallen half way from the highest group below the kinematic edge to the mean
+ * The Compton edge: where the spectrum, smoothed as far as chance asks for, has fallen half way from its top below the
+ * kinematic edge to the mean
  * between the edge and the full energy (from a quarter to a half of that way).
  */
 export function comptonEdge(continuum: Continuum, peaks: readonly Bins[], lineKeV: number): Finding {
@@ -55,14 +63,18 @@ export function comptonEdge(continuum: Continuum, peaks: readonly Bins[], lineKe
     continuum.binOf(edgeKeV + 0.25 * gapKeV),
     continuum.binOf(edgeKeV + 0.5 * gapKeV),
   );
-  const groups = groupsBetween(continuum, peaks, 0.8 * edgeKeV, edgeKeV + 0.25 * gapKeV, EDGE_GROUPS);
-  if (groups.length < LEAST_GROUPS || Number.isNaN(valley.mean)) return UNRESOLVED;
-  const below = groups.filter(({ energyKeV }) => energyKeV <= edgeKeV);
-  if (below.length === 0) return UNRESOLVED;
+  if (Number.isNaN(valley.mean)) return UNRESOLVED;
+  const isBelow = ({ energyKeV }: Group) => energyKeV <= edgeKeV;
+  const fine = groupsBetween(continuum, peaks, 0.9 * edgeKeV, edgeKeV + 0.25 * gapKeV, EDGE_GROUPS);
+  if (fine.length < LEAST_GROUPS || !fine.some(isBelow)) return UNRESOLVED;
+  const curves = SMOOTHINGS.map((reach) => smoothed(fine, reach)).filter((curve) => curve.some(isBelow));
+  const groups = curves.find((curve) => isSteady(curve.filter(isBelow), valley)) ?? curves[curves.length - 1];
+  const below = groups.filter(isBelow);
   const top = below.reduce((best, group) => (group.height.mean > best.height.mean ? group : best), below[0]);
   const error = (value: Value) => value.stdError ?? 0;
   const spread = Math.hypot(error(top.height), error(valley));
   if (!(top.height.mean - valley.mean > SEEN_SIGMAS * spread)) return ABSENT;
+  if (!isSteady(below, valley)) return UNRESOLVED;
   const half = 0.5 * (top.height.mean + valley.mean);
   const next = groups.findIndex(({ energyKeV, height }) => energyKeV > top.energyKeV && height.mean < half);
   if (next < 1) return ABSENT;
@@ -72,7 +84,26 @@ export function comptonEdge(continuum: Continuum, peaks: readonly Bins[], lineKe
   // A step this far off belongs to another line, or to photons scattered in front of the detector.
   if (Math.abs(mean / edgeKeV - 1) > EDGE_WITHIN) return UNRESOLVED;
   const heightError = Math.hypot(0.5 * spread, Math.max(error(before.height), error(after.height)));
-  return { mean, stdError: heightError / Math.abs(slope), status: 'seen' };
+  // Inside a group the fall may stand anywhere: an even spread over its width.
+  const withinKeV = (after.energyKeV - before.energyKeV) / Math.sqrt(12);
+  return { mean, stdError: Math.hypot(heightError / slope, withinKeV), status: 'seen' };
+}
+
+/** Means over each group and `reach` ones to either side: a step stays where it is. */
+function smoothed(groups: readonly Group[], reach: number): Group[] {
+  return groups.slice(reach, groups.length - reach).map(({ energyKeV }, i) => {
+    const near = groups.slice(i, i + 2 * reach + 1);
+    const mean = near.reduce((sum, { height }) => sum + height.mean, 0) / near.length;
+    const stdError = Math.hypot(...near.map(({ height }) => height.stdError ?? Infinity)) / near.length;
+    return { energyKeV, height: { mean, stdError: Number.isFinite(stdError) ? stdError : null } };
+  });
+}
+
+/** Whether chance cannot take one of the groups below half of the step from their mean to the valley. */
+function isSteady(below: readonly Group[], valley: Value): boolean {
+  const mean = below.reduce((sum, { height }) => sum + height.mean, 0) / below.length;
+  const half = 0.5 * (mean - valley.mean);
+  return below.every(({ height }) => half >= STEADY_SIGMAS * (height.stdError ?? Infinity));
 }
 
 /**
