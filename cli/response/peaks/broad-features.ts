@@ -53,8 +53,7 @@ const BUMP_GROUPS = 40;
 
 /**
  * The Compton edge: where the spectrum, smoothed as far as chance asks for, has fallen half way from its top below the
- * kinematic edge to the mean
- * between the edge and the full energy (from a quarter to a half of that way).
+ * kinematic edge to the mean between the edge and the full energy (from a quarter to a half of that way).
  */
 export function comptonEdge(continuum: Continuum, peaks: readonly Bins[], lineKeV: number): Finding {
   const edgeKeV = comptonEdgeKeV(lineKeV);
