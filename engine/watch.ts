@@ -1,13 +1,16 @@
 /** The figure a run is watched by: the one `until` names, or the leading one of the setup. */
 import { EngineError } from './errors.js';
 import type { Problem } from './problem.js';
+import { isUnreliable } from './reliability-verdict.js';
 import type { QuantityRow } from './result.js';
 import type { RunSums } from './run-sums.js';
-import type { Setup, Until } from './setup.js';
+import type { DoseQuantity, Setup, Until } from './setup.js';
 import { totalsOf } from './totals.js';
 
 /** Batches before an error is trusted enough to stop on it. */
 const MIN_BATCHES = 10;
+
+const DOSES: readonly string[] = ['air_kerma', 'ambient_dose', 'effective_dose_ap'] satisfies DoseQuantity[];
 
 export interface Watch {
   /** Whether `until` is met at this batch boundary. */
@@ -34,7 +37,10 @@ export function watchFor(setup: Setup, problem: Problem): Watch {
   return {
     met: (sums) => {
       if (!until || sums.batches < MIN_BATCHES) return false;
-      return relativeError(find(sums)) <= until.relativeError;
+      const row = find(sums);
+      // An error that cannot be relied on has not reached anything.
+      if (row?.reliability && isUnreliable(row.reliability) && row.stdError !== 0) return false;
+      return relativeError(row) <= until.relativeError;
     },
     figure: find,
     workFactor: (sums) => (until ? (relativeError(find(sums)) / until.relativeError) ** 2 : Infinity),
@@ -60,7 +66,8 @@ function allLines(rows: readonly QuantityRow[]): QuantityRow | undefined {
 
 function leadingRow(rows: readonly QuantityRow[]): QuantityRow | null {
   const named = (name: string) => allLines(rows.filter(({ quantity }) => quantity === name));
-  return named('full_energy') ?? named('transmitted') ?? null;
+  const dose = rows.find(({ quantity, mean }) => mean !== null && DOSES.includes(quantity));
+  return named('full_energy') ?? dose ?? named('transmitted') ?? null;
 }
 
 function relativeError(row: QuantityRow | null): number {

@@ -40,10 +40,15 @@ const SPECTRUM_TITLES: Readonly<Record<SpectrumTally, string>> = {
   pulse_height_sum: 'Pulse heights of all detectors added up',
 };
 
-function head({ title, histories, seed, stopped, timings }: Manifest, style: Style): string[] {
+function head({ title, histories, seed, stopped, timings, balance }: Manifest, style: Style): string[] {
+  // Only weighted histories have an error of their energy balance.
+  const transport = balance.relative_std_error === undefined ? '' : ' by deep transport';
   return [
     ...wrap(clip(title, 200), style.width).map(style.heading),
-    ...wrap(`${formatCount(histories)} histories, ${STOPPED[stopped]}; seed ${clip(seed)}`, style.width),
+    ...wrap(
+      `${formatCount(histories)} histories${transport}, ${STOPPED[stopped]}; seed ${clip(seed)}`,
+      style.width,
+    ),
     style.note(
       `${formatDuration(timings.wall_s)}, ${formatCount(timings.histories_per_second)} histories per second`,
     ),
