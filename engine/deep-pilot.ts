@@ -32,13 +32,9 @@ export interface DeepPlan {
   readonly start: StartPlan;
   /** Where flights end; see deep-flight.ts. */
   readonly flights: Float64Array;
-  /**
-   * Mean score per source photon of far face, front face and depths, roughly: contributions small against it are
-   * left to chance. 0: nothing is expected.
-   */
+  /** Mean score per source photon at the far and the front face, roughly: what is small against it is left to chance. */
   readonly farScore: number;
   readonly frontScore: number;
-  readonly scored: Scored;
 }
 
 /** Shares of the effort: figures behind, in front and inside the stack. */
@@ -84,7 +80,6 @@ export function makeDeepPlan(problem: Problem, tally: Tally): DeepPlan {
     flights: makeFlightTables(grid, worth.collision),
     farScore: dot(forward.far, pieces.leaving),
     frontScore: dot(forward.front, pieces.leaving),
-    scored,
   };
 }
 
