@@ -85,7 +85,11 @@ function joinSilent(bremsstrahlung: Tables['bremsstrahlung']): Pick<Tables, 'sil
   let length = 0;
   bremsstrahlung.forEach((tables, slot) => {
     for (let step = 0; step < RADIATION_STEPS && tables.length > 0; step++) {
-      const { silent } = tables[Math.min(step, tables.length - 1)];
+      // The first settles most cases for all: none of the others may be surer of a photon, which rounding could make them.
+      const silent =
+        step > 0
+          ? tables[Math.min(step, tables.length - 1)].silent
+          : tables[0].silent.map((_, bucket) => Math.min(...tables.map((table) => table.silent[bucket])));
       const known = step < tables.length ? -1 : silentBase[slot * RADIATION_STEPS + tables.length - 1];
       silentBase[slot * RADIATION_STEPS + step] = known < 0 ? length : known;
       if (known >= 0) continue;

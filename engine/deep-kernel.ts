@@ -22,7 +22,7 @@ import { PointScores } from './deep-points.js';
 import { DeepScores } from './deep-scores.js';
 import { DeepSource, head } from './deep-source.js';
 import { bucketOf, cellOf } from './energy-grid.js';
-import { DEPTH_OFFSET, DEPTH_SHIFT, DEPTH_STEPS } from './local-cutoff.js';
+import { depthIndex } from './local-cutoff.js';
 import { PAIR_THRESHOLD_KEV } from './constants.js';
 import { composeCosines, forward } from './physics/bremsstrahlung.js';
 import { COHERENT, INCOHERENT, interactAs, PAIR, PHOTOELECTRIC, type Site } from './physics/interact.js';
@@ -40,8 +40,6 @@ const MOST_COPIES = 1000;
 /** Faces count as twice as far as they are for what cannot get out: weights make rare ways out count. */
 const TRAPPED_SHARE = 0.5;
 
-const doubleView = new Float64Array(1);
-const wordView = new Uint32Array(doubleView.buffer);
 
 /** Plays `histories` histories with the stream in `site.random` into `tally`. */
 export function runDeepBatch(problem: Problem, histories: number, site: Site, tally: BatchTally): void {
@@ -183,12 +181,7 @@ class DeepRun {
     const { boundariesCm } = problem;
     const z = photon[Z];
     const nearest = Math.min(z - boundariesCm[this.layer], boundariesCm[this.layer + 1] - z);
-    let at = slot * DEPTH_STEPS;
-    if (nearest > 0) {
-      doubleView[0] = TRAPPED_SHARE * nearest * problem.densityOfSlot[slot];
-      const step = (wordView[1] >>> DEPTH_SHIFT) - DEPTH_OFFSET;
-      if (step > 0) at += step < DEPTH_STEPS ? step : DEPTH_STEPS - 1;
-    }
+    const at = depthIndex(slot, Math.max(0, TRAPPED_SHARE * nearest) * problem.densityOfSlot[slot]);
     site.localCutoffKeV = problem.localCutoffKeV[at];
     site.radiationStep = problem.radiationStep[at];
   }

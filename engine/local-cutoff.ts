@@ -14,12 +14,12 @@ import type { EnergyGrid } from './energy-grid.js';
 import { CELL_LENGTH, sharedDoubles, sharedInts } from './problem.js';
 
 const STEP_BITS = 2;
-export const DEPTH_SHIFT = 20 - STEP_BITS;
+const DEPTH_SHIFT = 20 - STEP_BITS;
 /** Lowest mass depth of the table, 2^-30 g/cm². */
 const LOWEST_EXPONENT = -30;
-export const DEPTH_OFFSET = (1023 + LOWEST_EXPONENT) << STEP_BITS;
+const DEPTH_OFFSET = (1023 + LOWEST_EXPONENT) << STEP_BITS;
 /** Up to 2^34 g/cm². */
-export const DEPTH_STEPS = 64 << STEP_BITS;
+const DEPTH_STEPS = 64 << STEP_BITS;
 /** Optical depth from which a photon counts as unable to get out. */
 const TRAPPED_DEPTH = 10;
 
@@ -32,6 +32,16 @@ export interface LocalCutoffs {
   readonly localCutoffKeV: Float64Array;
   /** Number of the emission cutoff, likewise. */
   readonly radiationStep: Int32Array;
+}
+
+const doubleView = new Float64Array(1);
+const wordView = new Uint32Array(doubleView.buffer);
+
+/** Place in the tables of a slot at a mass depth (g/cm²), which must not be negative. */
+export function depthIndex(slot: number, depthGPerCm2: number): number {
+  doubleView[0] = depthGPerCm2;
+  const step = (wordView[1] >>> DEPTH_SHIFT) - DEPTH_OFFSET;
+  return slot * DEPTH_STEPS + Math.max(0, Math.min(DEPTH_STEPS - 1, step));
 }
 
 /** Tables of all slots from their cells at density 1. */

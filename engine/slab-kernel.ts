@@ -2,7 +2,7 @@
  * The history loop for laterally infinite stacks: analog transport in depth z and direction cosine w alone.
  *
  * Hot code. State lives in locals; the random stream (alea, see random.ts), the logarithm of the flight, the cosine of
- * the azimuth, incoherent scattering and its Doppler broadening are written out, because a call for each costs as much
+ * the azimuth, scattering and Doppler broadening are written out, because a call for each costs as much
  * as the work around it (measured: through `interact` plain physics loses a quarter of its speed, all physics half).
  * What is rarer is played by the functions of interact.ts. A test holds this loop against them.
  */
@@ -10,12 +10,20 @@ import { AnalogDose } from './analog-dose.js';
 import { BUCKET_OFFSET, BUCKET_SHIFT } from './energy-grid.js';
 import { MAX_TOUCHED, type BatchTally } from './batch-tally.js';
 import { scoreCoincidences } from './coincidence.js';
-import { ELECTRON_REST_KEV, PAIR_THRESHOLD_KEV } from './constants.js';
+import { ELECTRON_REST_KEV, HC_KEV_ANGSTROM, PAIR_THRESHOLD_KEV } from './constants.js';
 import { lineEnergyKeV, pickLine } from './emission.js';
 import { AZIMUTH_COSINE, AZIMUTH_STEPS, LOG_INVERSE, LOG_NEGATIVE, POWER_OF_TWO } from './lookup-tables.js';
-import { DEPTH_OFFSET, DEPTH_SHIFT, DEPTH_STEPS, RADIATION_STEPS } from './local-cutoff.js';
+import { depthIndex, RADIATION_STEPS } from './local-cutoff.js';
 import { COLUMNS, ROW_LENGTH, ROW_OFFSET, ROW_SHIFT } from './physics/incoherent.js';
-import { absorb, producePair, radiateRecoil, scatterCoherently, type Site } from './physics/interact.js';
+import {
+  COHERENT_GUIDE,
+  COHERENT_NODES,
+  GUIDE_PLACE,
+  TOP_OFFSET,
+  TOP_PLACE,
+  TOP_SHIFT,
+} from './physics/coherent.js';
+import { absorb, producePair, radiateRecoil, type Site } from './physics/interact.js';
 import { MAX_TRIES, MOMENTUM_LIMIT, PROFILE_STEPS } from './physics/doppler.js';
 import { CELL_LENGTH, type Problem } from './problem.js';
 import { ALEA_CARRY, ALEA_MULTIPLIER, nextUniform } from './random.js';
@@ -33,9 +41,8 @@ const LEFT_FRONT = 2;
 const ABSORBED = 3;
 /** From here on: collisions that set photons free or need a rarer law, played by the functions of interact.ts. */
 const ABSORBING = 4;
-const COHERENT = 5;
-const PAIR = 6;
-const RADIATING = 7;
+const PAIR = 5;
+const RADIATING = 6;
 
 const TOO_MANY_WAITING = `more than ${STACK_DEPTH} photons waiting in one history`;
 const TOO_MANY_SCORES = `more than ${MAX_TOUCHED} scores in one history`;
@@ -46,6 +53,16 @@ const stackZ = new Float64Array(STACK_DEPTH);
 const stackLayer = new Int32Array(STACK_DEPTH);
 const doubleView = new Float64Array(1);
 const wordView = new Uint32Array(doubleView.buffer);
+
+/** The highest local cutoff of each layer, which is that of its middle. */
+function highestCutoffs(problem: Problem): Float64Array {
+  const { boundariesCm, cutoffKeV, densityOfSlot, localCutoffKeV, plain, slotOfLayer } = problem;
+  return Float64Array.from({ length: problem.layers }, (_, layer) => {
+    const slot = slotOfLayer[layer];
+    const halfCm = 0.5 * (boundariesCm[layer + 1] - boundariesCm[layer]);
+    return plain ? cutoffKeV : localCutoffKeV[depthIndex(slot, halfCm * densityOfSlot[slot])];
+  });
+}
 
 /** Direction cosine to z after a turn by an angle of the given cosine, at azimuth π u. */
 function turnCosine(w: number, cosine: number, u: number): number {
@@ -58,8 +75,10 @@ function turnCosine(w: number, cosine: number, u: number): number {
 
 /** Plays `histories` histories with the stream in `site.random` into `tally`. */
 export function runSlabBatch(problem: Problem, histories: number, site: Site, tally: BatchTally): void {
-  const { boundariesCm, cells, cellCount, cutoffKeV, emission, incoherent, incoherentBase, layers, plain } =
-    problem;
+  const { boundariesCm, cells, cellCount, cutoffKeV, emission, layers } = problem;
+  const { coherent, coherentBase, incoherent, incoherentBase } = problem;
+  const full = !problem.plain;
+  const highestCutoffKeV = highestCutoffs(problem);
   const { reachableKeV, dopplerBase, dopplerCount, dopplerTopKeV, silent, silentBase } = problem;
   const { alias, bindingKeV, keep, momenta, profile } = problem.doppler;
   const radiates = silent.length > 0;
@@ -72,7 +91,7 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
   const { random, secondaries } = site;
   const deposited = new Float64Array(layers);
   const faceDose = problem.faceDose === null ? null : new AnalogDose(problem, tally);
-  const start: SlabStart = { z: 0, w: 1, layer: 0 };
+  const start: SlabStart = { place: new Float64Array([0, 1]), layer: 0 };
   const onlyKeV = emission.lowKeV[0];
   const fixedStart =
     problem.source.kind === 'beam' && emission.lowKeV.length === 1 && emission.highKeV[0] === onlyKeV;
@@ -105,9 +124,9 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
     sourceSumKeV += sourceKeV;
     sourceSquare += sourceKeV * sourceKeV;
     let energyKeV = sourceKeV;
-    let z = start.z;
-    let w = start.w;
-    let layer = start.layer;
+    let z = start.place[0];
+    let w = start.place[1];
+    let layer = start.layer | 0;
     let collided = false;
     let waiting = 0;
     let touchedCount = 0;
@@ -122,15 +141,18 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
       // memory, which costs a third of the speed. What needs one leaves the loop and comes back.
       let event = 0;
       let cell = 0;
+      let bucket = 0;
       let slot = 0;
       let depth = 0;
       let v = 0;
       let scatteredKeV = 0;
+      let loud = false;
       for (;;) {
         // Cell of the energy grid.
         doubleView[0] = energyKeV;
         const high = wordView[1];
-        cell = firstCell[(high >>> BUCKET_SHIFT) - BUCKET_OFFSET];
+        bucket = (high >>> BUCKET_SHIFT) - BUCKET_OFFSET;
+        cell = firstCell[bucket];
         while (energyKeV >= nodesKeV[cell + 1]) cell++;
 
         // Optical length of the flight: −ln u from the bits of u, a second draw filling the bits of a small one.
@@ -190,18 +212,6 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
         if (event !== 0) break;
         collided = true;
 
-        // What cannot get out of the layer from here deposits on the spot (local-cutoff.ts).
-        let lowestKeV = cutoffKeV;
-        depth = slot * DEPTH_STEPS;
-        if (!plain) {
-          const toFront = z - boundariesCm[layer];
-          const toFar = boundariesCm[layer + 1] - z;
-          doubleView[0] = (toFront < toFar ? toFront : toFar) * densityOfSlot[slot];
-          const step = (wordView[1] >>> DEPTH_SHIFT) - DEPTH_OFFSET;
-          if (step > 0) depth += step < DEPTH_STEPS ? step : DEPTH_STEPS - 1;
-          lowestKeV = localCutoffKeV[depth];
-        }
-
         // Which process.
         t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
         s0 = s1;
@@ -212,117 +222,159 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
         if (pick < cells[at + 2] + cells[at + 3] * energyKeV) {
           // A call is needed where a shell's photon could get out, or the photoelectron may radiate: its chance of
           // silence is at least that of an electron with all the energy.
-          let called = reachableKeV[slot * cellCount + cell] > lowestKeV;
-          if (radiates && energyKeV > lowestKeV) {
+          const reachKeV = reachableKeV[slot * cellCount + cell];
+          if (radiates) {
             t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
             s0 = s1;
             s1 = s2;
             carry = Math.floor(t);
             s2 = t - carry;
-            const bucket = (high >>> BUCKET_SHIFT) - BUCKET_OFFSET;
-            if (s2 >= silent[silentBase[slot * RADIATION_STEPS + radiationStep[depth]] + bucket])
-              called = true;
+            loud = s2 >= silent[silentBase[slot * RADIATION_STEPS] + bucket];
           }
-          if (called) {
-            event = ABSORBING;
-            break;
+          if (loud || reachKeV > cutoffKeV) {
+            const nearest = Math.min(z - boundariesCm[layer], boundariesCm[layer + 1] - z);
+            depth = depthIndex(slot, nearest * densityOfSlot[slot]);
+            const lowestKeV = localCutoffKeV[depth];
+            loud &&=
+              energyKeV > lowestKeV &&
+              s2 >= silent[silentBase[slot * RADIATION_STEPS + radiationStep[depth]] + bucket];
+            if (loud || reachKeV > lowestKeV) {
+              event = ABSORBING;
+              break;
+            }
           }
           deposited[layer] += energyKeV;
           event = ABSORBED;
           break;
         }
         if (pick >= cells[at + 4] + cells[at + 5] * energyKeV) {
-          event =
-            energyKeV <= PAIR_THRESHOLD_KEV || pick < cells[at + 6] + cells[at + 7] * energyKeV
-              ? COHERENT
-              : PAIR;
-          break;
-        }
-
-        // Incoherent scattering: v = (1 − cos θ)/2 by the table of incoherent.ts.
-        t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
-        s0 = s1;
-        s1 = s2;
-        carry = Math.floor(t);
-        s2 = t - carry;
-        let part = Math.sqrt(s2) * COLUMNS;
-        const column = part | 0;
-        part -= column;
-        const lower = incoherentBase[slot] + ((high >>> ROW_SHIFT) - ROW_OFFSET) * ROW_LENGTH + column;
-        const upper = lower + ROW_LENGTH;
-        const betweenRows = (high & ((1 << ROW_SHIFT) - 1)) * (1 / (1 << ROW_SHIFT));
-        const low = incoherent[lower] + part * (incoherent[lower + 1] - incoherent[lower]);
-        const up = incoherent[upper] + part * (incoherent[upper + 1] - incoherent[upper]);
-        const s = low + betweenRows * (up - low);
-        // v = s / (1 + k) and the energy ratio 1 / (1 + 2 k v) by one division.
-        const k = energyKeV * (1 / ELECTRON_REST_KEV);
-        const spread = 1 + k + 2 * k * s;
-        const inverse = 1 / ((1 + k) * spread);
-        v = s * spread * inverse;
-        scatteredKeV = energyKeV * (1 + k) * (1 + k) * inverse;
-
-        // Doppler broadening, the law and the draws of doppler.ts.
-        const shells = dopplerCount[slot];
-        if (shells > 0 && energyKeV < dopplerTopKeV) {
-          let tries = 0;
-          for (; tries < MAX_TRIES; tries++) {
-            t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
-            s0 = s1;
-            s1 = s2;
-            carry = Math.floor(t);
-            s2 = t - carry;
-            const place = s2 * shells;
-            let shell = dopplerBase[slot] + (place | 0);
-            if (place - (place | 0) >= keep[shell]) shell = alias[shell];
-            t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
-            s0 = s1;
-            s1 = s2;
-            carry = Math.floor(t);
-            s2 = t - carry;
-            const signed = 2 * s2 - 1;
-            const left = energyKeV - bindingKeV[shell];
-            const most = 2 * k * left * v - bindingKeV[shell];
-            // A momentum along the transfer is needed where the transfer alone cannot free the electron.
-            if (left <= 0 || (most < 0 && signed >= 0)) continue;
-            const tail = Math.sqrt(1 - (signed < 0 ? -signed : signed)) * PROFILE_STEPS;
-            const node = profile[shell] + (tail < PROFILE_STEPS ? tail | 0 : PROFILE_STEPS - 1);
-            const size =
-              momenta[node] + (tail - (node - profile[shell])) * (momenta[node + 1] - momenta[node]);
-            const bound = bindingKeV[shell] * bindingKeV[shell] + 4 * energyKeV * left * v;
-            const limit = most * most - size * size * bound;
-            if (signed < 0 ? size >= MOMENTUM_LIMIT || (most < 0 && limit > 0) : limit < 0) continue;
-            const p2 = size * size;
-            const a = 1 + 2 * k * v;
-            const b = a - p2 * (1 - 2 * v);
-            const root = Math.sqrt(Math.max(0, b * b - (a * a - p2) * (1 - p2)));
-            scatteredKeV = (energyKeV * (signed < 0 ? b - root : b + root)) / (a * a - p2);
+          if (energyKeV > PAIR_THRESHOLD_KEV && pick >= cells[at + 6] + cells[at + 7] * energyKeV) {
+            event = PAIR;
             break;
           }
-          if (tries === MAX_TRIES) site.dopplerGivenUp++;
-        }
-
-        // The recoil electron may radiate: a draw below the chance of no photon settles most cases here.
-        const depositedKeV = energyKeV - scatteredKeV;
-        if (radiates && depositedKeV > lowestKeV) {
-          doubleView[0] = depositedKeV;
-          const bucket = (wordView[1] >>> BUCKET_SHIFT) - BUCKET_OFFSET;
+          // Coherent scattering, the law and the draws of coherent.ts.
+          const base = coherentBase[slot];
+          const row = base + TOP_PLACE + (high >>> TOP_SHIFT) - TOP_OFFSET;
+          const betweenRows = (high & ((1 << TOP_SHIFT) - 1)) * (1 / (1 << TOP_SHIFT));
+          const top = coherent[row] + betweenRows * (coherent[row + 1] - coherent[row]);
+          const perQ = (HC_KEV_ANGSTROM * HC_KEV_ANGSTROM) / (energyKeV * energyKeV);
+          const values = base + COHERENT_NODES;
+          for (;;) {
+            t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
+            s0 = s1;
+            s1 = s2;
+            carry = Math.floor(t);
+            s2 = t - carry;
+            const a = s2 * top;
+            let i = coherent[base + GUIDE_PLACE + ((a * COHERENT_GUIDE) | 0)] | 0;
+            while (a >= coherent[values + i + 1]) i++;
+            const part = (a - coherent[values + i]) / (coherent[values + i + 1] - coherent[values + i]);
+            v = Math.min(
+              1,
+              (coherent[base + i] + part * (coherent[base + i + 1] - coherent[base + i])) * perQ,
+            );
+            t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
+            s0 = s1;
+            s1 = s2;
+            carry = Math.floor(t);
+            s2 = t - carry;
+            if (2 * s2 <= 1 + (1 - 2 * v) * (1 - 2 * v)) break;
+          }
+        } else {
+          // Incoherent scattering: v = (1 − cos θ)/2 by the table of incoherent.ts.
           t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
           s0 = s1;
           s1 = s2;
           carry = Math.floor(t);
           s2 = t - carry;
-          if (s2 >= silent[silentBase[slot * RADIATION_STEPS + radiationStep[depth]] + bucket]) {
-            event = RADIATING;
-            break;
+          let part = Math.sqrt(s2) * COLUMNS;
+          const column = part | 0;
+          part -= column;
+          const lower = incoherentBase[slot] + ((high >>> ROW_SHIFT) - ROW_OFFSET) * ROW_LENGTH + column;
+          const upper = lower + ROW_LENGTH;
+          const betweenRows = (high & ((1 << ROW_SHIFT) - 1)) * (1 / (1 << ROW_SHIFT));
+          const low = incoherent[lower] + part * (incoherent[lower + 1] - incoherent[lower]);
+          const up = incoherent[upper] + part * (incoherent[upper + 1] - incoherent[upper]);
+          const s = low + betweenRows * (up - low);
+          // v = s / (1 + k) and the energy ratio 1 / (1 + 2 k v) by one division.
+          const k = energyKeV * (1 / ELECTRON_REST_KEV);
+          const spread = 1 + k + 2 * k * s;
+          const inverse = 1 / ((1 + k) * spread);
+          v = s * spread * inverse;
+          scatteredKeV = energyKeV * (1 + k) * (1 + k) * inverse;
+
+          // Doppler broadening, the law and the draws of doppler.ts.
+          const shells = dopplerCount[slot];
+          if (shells > 0 && energyKeV < dopplerTopKeV) {
+            let tries = 0;
+            for (; tries < MAX_TRIES; tries++) {
+              t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
+              s0 = s1;
+              s1 = s2;
+              carry = Math.floor(t);
+              s2 = t - carry;
+              const place = s2 * shells;
+              let shell = dopplerBase[slot] + (place | 0);
+              if (place - (place | 0) >= keep[shell]) shell = alias[shell];
+              t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
+              s0 = s1;
+              s1 = s2;
+              carry = Math.floor(t);
+              s2 = t - carry;
+              const sign = 2 * ((s2 * 2) | 0) - 1;
+              const tail = Math.sqrt(1 - Math.abs(2 * s2 - 1)) * PROFILE_STEPS;
+              const step = tail < PROFILE_STEPS ? tail | 0 : PROFILE_STEPS - 1;
+              const node = profile[shell] + step;
+              const size = momenta[node] + (tail - step) * (momenta[node + 1] - momenta[node]);
+              // Kept where the transfer and the momentum together free the electron: p ≤ p_max, without its division.
+              const left = energyKeV - bindingKeV[shell];
+              const most = 2 * k * left * v - bindingKeV[shell];
+              const bound = bindingKeV[shell] * bindingKeV[shell] + 4 * energyKeV * left * v;
+              const p = sign * size;
+              if (left <= 0 || p * size * bound > most * Math.abs(most) || p <= -MOMENTUM_LIMIT) continue;
+              const a = 1 + 2 * k * v;
+              const b = a - p * p * (1 - 2 * v);
+              const root = p * Math.sqrt(4 * v * (v * (1 + k) * (1 + k) + (1 - v) * (1 - p * p)));
+              scatteredKeV = (energyKeV * (b + root)) / (a * a - p * p);
+              break;
+            }
+            if (tries === MAX_TRIES) site.dopplerGivenUp++;
           }
+
+          // The recoil electron may radiate: a draw below the chance of no photon settles most cases here. What cannot get
+          // out of the layer deposits on the spot (local-cutoff.ts); most photons are above all local cutoffs of it.
+          const depositedKeV = energyKeV - scatteredKeV;
+          loud = false;
+          if (radiates && depositedKeV > cutoffKeV) {
+            doubleView[0] = depositedKeV;
+            bucket = (wordView[1] >>> BUCKET_SHIFT) - BUCKET_OFFSET;
+            t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
+            s0 = s1;
+            s1 = s2;
+            carry = Math.floor(t);
+            s2 = t - carry;
+            loud = s2 >= silent[silentBase[slot * RADIATION_STEPS] + bucket];
+          }
+          if (loud || scatteredKeV < highestCutoffKeV[layer]) {
+            const nearest = Math.min(z - boundariesCm[layer], boundariesCm[layer + 1] - z);
+            depth = depthIndex(slot, nearest * densityOfSlot[slot]);
+            const lowestKeV = full ? localCutoffKeV[depth] : cutoffKeV;
+            loud &&=
+              depositedKeV > lowestKeV &&
+              s2 >= silent[silentBase[slot * RADIATION_STEPS + radiationStep[depth]] + bucket];
+            if (loud) {
+              event = RADIATING;
+              break;
+            }
+            if (scatteredKeV < lowestKeV) {
+              deposited[layer] += energyKeV;
+              event = ABSORBED;
+              break;
+            }
+          }
+          deposited[layer] += depositedKeV;
+          energyKeV = scatteredKeV;
         }
-        if (scatteredKeV < lowestKeV) {
-          deposited[layer] += energyKeV;
-          event = ABSORBED;
-          break;
-        }
-        deposited[layer] += depositedKeV;
-        energyKeV = scatteredKeV;
 
         // New direction: the azimuth is uniform and only its cosine enters.
         t = ALEA_MULTIPLIER * s0 + carry * ALEA_CARRY;
@@ -344,19 +396,22 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
         random[1] = s1;
         random[2] = s2;
         random[3] = carry;
+        if (event === PAIR) {
+          const nearest = Math.min(z - boundariesCm[layer], boundariesCm[layer + 1] - z);
+          depth = depthIndex(slot, nearest * densityOfSlot[slot]);
+        }
+        const lowestKeV = full ? localCutoffKeV[depth] : cutoffKeV;
         secondaries.count = 0;
         site.energyKeV = energyKeV;
-        site.localCutoffKeV = localCutoffKeV[depth];
+        site.localCutoffKeV = lowestKeV;
         site.radiationStep = radiationStep[depth];
         if (event === ABSORBING) {
           absorb(problem, site, slot, cell, s2);
-        } else if (event === COHERENT) {
-          scatterCoherently(problem, site, slot);
-        } else if (event === PAIR) {
-          producePair(problem, site, slot);
-        } else {
+        } else if (event === RADIATING) {
           site.v = v;
           radiateRecoil(problem, site, slot, scatteredKeV, s2);
+        } else {
+          producePair(problem, site, slot);
         }
         alive = site.energyKeV > 0;
 

@@ -4,8 +4,8 @@ import { nextOpenUniform, type StreamState } from './random.js';
 
 /** Start of a history; made once per batch and reused. */
 export interface SlabStart {
-  z: number;
-  w: number;
+  /** Depth z in cm and direction cosine w. */
+  readonly place: Float64Array;
   layer: number;
 }
 
@@ -17,22 +17,22 @@ export function startInSlab(problem: Problem, random: StreamState, start: SlabSt
   const { source } = problem;
   switch (source.kind) {
     case 'beam':
-      start.w = problem.beamCosine;
+      start.place[1] = problem.beamCosine;
       return;
     case 'point':
     case 'disc':
-      start.w = nextOpenUniform(random);
+      start.place[1] = nextOpenUniform(random);
       return;
     case 'diffuse':
       // Constant radiance crosses a face in proportion to the cosine.
-      start.w = source.law === 'isotropic' ? Math.sqrt(nextOpenUniform(random)) : nextOpenUniform(random);
+      start.place[1] = source.law === 'isotropic' ? Math.sqrt(nextOpenUniform(random)) : nextOpenUniform(random);
       return;
     case 'embedded': {
       const layer = problem.sourceLayer;
       const low = problem.boundariesCm[layer];
       start.layer = layer;
-      start.z = low + (problem.boundariesCm[layer + 1] - low) * nextOpenUniform(random);
-      start.w = 2 * nextOpenUniform(random) - 1;
+      start.place[0] = low + (problem.boundariesCm[layer + 1] - low) * nextOpenUniform(random);
+      start.place[1] = 2 * nextOpenUniform(random) - 1;
     }
   }
 }

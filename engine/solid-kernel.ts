@@ -11,7 +11,7 @@ import { clearance, turn } from '../geometry/index.js';
 import type { BatchTally } from './batch-tally.js';
 import { lineEnergyKeV, pickLine } from './emission.js';
 import { cellOf } from './energy-grid.js';
-import { DEPTH_OFFSET, DEPTH_SHIFT, DEPTH_STEPS } from './local-cutoff.js';
+import { depthIndex } from './local-cutoff.js';
 import { ENERGY, WEIGHT } from './photon.js';
 import { interact, type Site } from './physics/interact.js';
 import type { Problem } from './problem.js';
@@ -91,14 +91,9 @@ export function runSolidBatch(problem: Problem, histories: number, site: Site, t
   dose?.closeBatch(histories);
 }
 
-const doubleView = new Float64Array(1);
-const wordView = new Uint32Array(doubleView.buffer);
-
 /** Sets the energy below which a photon cannot get out of its layer from here (see local-cutoff.ts). */
 function setLocalCutoff(problem: Problem, site: Site, slot: number, clearanceCm: number): void {
-  doubleView[0] = clearanceCm * problem.densityOfSlot[slot];
-  const step = (wordView[1] >>> DEPTH_SHIFT) - DEPTH_OFFSET;
-  const at = slot * DEPTH_STEPS + (step < 0 ? 0 : step < DEPTH_STEPS ? step : DEPTH_STEPS - 1);
+  const at = depthIndex(slot, clearanceCm * problem.densityOfSlot[slot]);
   site.localCutoffKeV = problem.localCutoffKeV[at];
   site.radiationStep = problem.radiationStep[at];
 }

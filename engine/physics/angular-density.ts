@@ -3,7 +3,7 @@
  * tables, so that scoring a direction and drawing it agree to the last digit.
  */
 import { ELECTRON_REST_KEV, HC_KEV_ANGSTROM } from '../constants.js';
-import { COHERENT_LENGTH, COHERENT_NODES } from './coherent.js';
+import { COHERENT_NODES, STEP_PLACE } from './coherent.js';
 import { COLUMNS, rowEnergyKeV, ROW_LENGTH, ROW_OFFSET, ROW_SHIFT } from './incoherent.js';
 
 const doubleView = new Float64Array(1);
@@ -90,7 +90,7 @@ export function coherentDensity(
   const q = v * top;
   let i = 0;
   if (q > table[base + 1]) {
-    const steps = Math.log(q / table[base + 1]) * table[base + COHERENT_LENGTH - 1];
+    const steps = Math.log(q / table[base + 1]) * table[base + STEP_PLACE];
     i = Math.min(COHERENT_NODES - 2, 1 + Math.floor(steps));
   }
   const cosine = 1 - 2 * v;

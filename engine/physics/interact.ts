@@ -44,6 +44,22 @@ export class Site {
   readonly electronPhotons = new Float64Array(2 * MAX_ELECTRON_PHOTONS);
   readonly electronFrames = new Float64Array(2 * MAX_ELECTRON_PHOTONS);
   readonly next = () => nextOpenUniform(this.random);
+
+  /** The photon deposits all it has. */
+  end(): void {
+    this.depositedKeV = this.energyKeV;
+    this.energyKeV = 0;
+  }
+
+  /** The photon goes on with less energy, unless that is below the local cutoff. */
+  scatter(scatteredKeV: number): void {
+    if (scatteredKeV < this.localCutoffKeV) {
+      this.end();
+    } else {
+      this.depositedKeV = this.energyKeV - scatteredKeV;
+      this.energyKeV = scatteredKeV;
+    }
+  }
 }
 
 /**

@@ -16,23 +16,12 @@ const rows = publishedRows('dose-albedo-parameters').map((row) => ({
   d: Number(row.d),
 }));
 
-/** Parameters at an energy: c straight in ln E, d straight in ln d against ln E, between tabulated energies. */
-function parametersAt(material: string, energyKeV: number): { c: number; d: number } {
-  const own = rows.filter((row) => row.material === material);
-  const exact = own.find((row) => row.energyKeV === energyKeV);
-  if (exact) return exact;
-  const above = own.findIndex((row) => row.energyKeV > energyKeV);
-  const [a, b] = [own[above - 1], own[above]];
-  const part = Math.log(energyKeV / a.energyKeV) / Math.log(b.energyKeV / a.energyKeV);
-  return { c: a.c + part * (b.c - a.c), d: a.d * (b.d / a.d) ** part };
-}
-
 /**
  * Dose albedo for normal incidence: the differential one, [c K(θ) 10²⁶ + d] / (1 + cos θ₀ / cos θ), integrated over the
  * half space; K is the Klein–Nishina cross section for scattered energy in cm² per electron and sr.
  */
 function publishedDoseAlbedo(material: string, energyKeV: number): number {
-  const { c, d } = parametersAt(material, energyKeV);
+  const { c, d } = rows.find((row) => row.material === material && row.energyKeV === energyKeV)!;
   const scatteredEnergy = (v: number) =>
     ((RADIUS_SQUARED / 2) * freeElectron(energyKeV, v)) / (1 + (2 * energyKeV * v) / REST);
   const perSteradian = (w: number) => (c * 1e26 * scatteredEnergy((1 + w) / 2) + d) / (1 + 1 / w);
@@ -54,7 +43,7 @@ const played = new Map<string, Played>();
 function play(material: string, energyKeV: number): Played {
   const key = `albedo ${material} ${energyKeV}`;
   const stack = [[material, THICK_CM[material]]] as const;
-  if (!played.has(key)) played.set(key, playSlab({ stack, energyKeV, physics: ALL, seed: key }, 40_000));
+  if (!played.has(key)) played.set(key, playSlab({ stack, energyKeV, physics: ALL, seed: key }, 150_000));
   return played.get(key)!;
 }
 
@@ -64,22 +53,22 @@ const CASES = [
   { material: 'water', energyKeV: 1000 },
   { material: 'concrete', energyKeV: 200 },
   { material: 'concrete', energyKeV: 662 },
-  { material: 'concrete', energyKeV: 1250 },
+  { material: 'concrete', energyKeV: 1000 },
   { material: 'iron', energyKeV: 200 },
   { material: 'iron', energyKeV: 662 },
-  { material: 'iron', energyKeV: 1250 },
+  { material: 'iron', energyKeV: 1000 },
 ];
 
 describe('backscatter of a broad normal beam', () => {
-  // Values from memory. The parameters are fits whose stated errors are 10 to 15 % of c and d at 662 keV, and they leave
-  // out annihilation and X rays; sampling adds 1 %.
+  // Values from memory, at energies that were fitted: between them the fits give no number. Their stated errors are 10 to
+  // 15 % of c and d at 662 keV, and they leave out annihilation and X rays; sampling adds 0.6 %.
   it.each(CASES)(
-    'from thick $material at $energyKeV keV has the published dose albedo within 13 %',
+    'from thick $material at $energyKeV keV has the published dose albedo within 10 %',
     (given) => {
       const { material, energyKeV } = given;
       const published = publishedDoseAlbedo(material, energyKeV);
       const got = kermaAlbedo(play(material, energyKeV), energyKeV);
-      expect(Math.abs(got / published - 1), `got ${got}, published ${published}`).toBeLessThan(0.13);
+      expect(Math.abs(got / published - 1), `got ${got}, published ${published}`).toBeLessThan(0.1);
     },
   );
 
