@@ -1,5 +1,5 @@
 /** `thickset size`: the thickness of one layer that brings doses under their limits. */
-import { InvalidArgumentError, type Command } from 'commander';
+import { InvalidArgumentError, Option, type Command } from 'commander';
 import {
   EngineError,
   Run,
@@ -25,8 +25,8 @@ import { parseQuantity } from './units.js';
 
 interface SizeOptions {
   readonly layer: string;
-  readonly limit: readonly RateLimit[];
-  readonly transmission: readonly number[];
+  readonly limit?: readonly RateLimit[];
+  readonly transmission?: readonly number[];
   readonly step: number;
   readonly tradeOff?: string;
   readonly threads?: number;
@@ -49,20 +49,17 @@ export function registerSizeCommand(program: Command): void {
     .option(
       '--limit <bound>',
       'as in "ambient_dose <= 2.5 uSv/h", or "ambient_dose at desk <= …"; may be given more than once',
-      (text, before: readonly RateLimit[]) => [...before, parseLimit(text)],
-      [],
+      (text, before: readonly RateLimit[] = []) => [...before, parseLimit(text)],
     )
     .option(
       '--transmission <share>',
       'dose with the stack over dose without it, as in 1e-3; may be given more than once',
-      (text, before: readonly number[]) => [...before, parseTransmission(text)],
-      [],
+      (text, before: readonly number[] = []) => [...before, parseTransmission(text)],
     )
-    .option(
-      '--step <length>',
-      'round the thickness up to a multiple of it; default: 1 mm',
-      parseStep,
-      DEFAULT_STEP_CM,
+    .addOption(
+      new Option('--step <length>', 'round the thickness up to a multiple of it')
+        .argParser(parseStep)
+        .default(DEFAULT_STEP_CM, '1 mm'),
     )
     .option('--trade-off <layer>', 'also list thicknesses of this layer with what the sized one then needs')
     .option('--threads <number>', 'worker threads; default: one for each core', parseThreads)
@@ -82,13 +79,14 @@ function parseStep(text: string): number {
 }
 
 async function sizeCommand(path: string, options: SizeOptions): Promise<void> {
-  if (options.limit.length + options.transmission.length === 0) {
+  const { limit = [], transmission = [] } = options;
+  if (limit.length + transmission.length === 0) {
     throw errors.usage('nothing to meet', 'give --limit "ambient_dose <= 2.5 uSv/h" or --transmission 1e-3');
   }
   const file = readSetupFile(path);
   const given = { ...file.setup, seed: options.seed ?? file.setup.seed };
   requireLayers(given, options);
-  const report = await answer(makeTask(given, options.limit, options.transmission), options);
+  const report = await answer(makeTask(given, limit, transmission), options);
   await print(report, options);
   if (['impossible', 'unconfirmed'].includes(verdictOf(report.answer)))
     process.exitCode = EXIT_CODES.incomplete;

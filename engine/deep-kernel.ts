@@ -40,7 +40,6 @@ const MOST_COPIES = 1000;
 /** Faces count as twice as far as they are for what cannot get out: weights make rare ways out count. */
 const TRAPPED_SHARE = 0.5;
 
-
 /** Plays `histories` histories with the stream in `site.random` into `tally`. */
 export function runDeepBatch(problem: Problem, histories: number, site: Site, tally: BatchTally): void {
   const run = new DeepRun(problem, site, tally);

@@ -25,7 +25,8 @@ export function startInSlab(problem: Problem, random: StreamState, start: SlabSt
       return;
     case 'diffuse':
       // Constant radiance crosses a face in proportion to the cosine.
-      start.place[1] = source.law === 'isotropic' ? Math.sqrt(nextOpenUniform(random)) : nextOpenUniform(random);
+      start.place[1] =
+        source.law === 'isotropic' ? Math.sqrt(nextOpenUniform(random)) : nextOpenUniform(random);
       return;
     case 'embedded': {
       const layer = problem.sourceLayer;
