@@ -1,12 +1,12 @@
 /** What runs in a worker thread: consecutive batches of a problem, each with its own random stream. */
 import { BatchTally } from './batch-tally.js';
-import { runDeepBatch } from './deep-kernel.js';
+import { runDeepBatch } from './deep/kernel.js';
 import { Site } from './physics/interact.js';
 import type { Kernel, Problem } from './problem.js';
 import { seedStream } from './random.js';
 import type { BatchResult } from './run-sums.js';
-import { runSlabBatch } from './slab-kernel.js';
-import { runSolidBatch } from './solid-kernel.js';
+import { runSlabBatch } from './slab/kernel.js';
+import { runSolidBatch } from './solid/kernel.js';
 
 /** Batches `first`, `first + 1`, … with their numbers of histories. */
 export interface BatchTask {

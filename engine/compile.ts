@@ -2,12 +2,12 @@
 import { slotsOf } from './compile-slots.js';
 import { tablesOf } from './compile-tables.js';
 import { PAIR_THRESHOLD_KEV } from './constants.js';
-import { isDeep, makeDeepProblem } from './deep-choice.js';
+import { isDeep, makeDeepProblem } from './deep/choice.js';
 import { makeDoseLines } from './dose-lines.js';
 import { makeEmissionTable, topEnergyKeV } from './emission.js';
 import { sharedDoubles, type Problem } from './problem.js';
 import type { Physics, Setup } from './setup.js';
-import { hasEdges, makeSolidProblem } from './solid-source.js';
+import { hasEdges, makeSolidProblem } from './solid/source.js';
 import { makeTallyLayout } from './tally-layout.js';
 import { uncollidedConstants } from './uncollided.js';
 

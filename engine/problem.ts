@@ -9,9 +9,9 @@ import type { EnergyGrid } from './energy-grid.js';
 import type { EmissionTable } from './emission.js';
 import type { TallyLayout } from './tally-layout.js';
 import type { SourceShape } from './setup.js';
-import type { DeepProblem } from './deep-choice.js';
+import type { DeepProblem } from './deep/choice.js';
 import type { Constants } from './uncollided.js';
-import type { SolidProblem } from './solid-source.js';
+import type { SolidProblem } from './solid/source.js';
 
 /**
  * Numbers per cell and slot, each a straight line a + b E over the cell: linear attenuation coefficient (1/cm), then

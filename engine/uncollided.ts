@@ -6,7 +6,7 @@
  * those of a beam by exp(−τ/w), those of isotropic ones by exponential integrals E_n(τ). A single point or disc in front
  * of layers without end gives, summed over the plane, what sources spread over the plane give at one place.
  */
-import { attenuationPerCm } from './deep-grid.js';
+import { attenuationPerCm } from './deep/grid.js';
 import type { DoseLayout } from './dose-layout.js';
 import { cellOf } from './energy-grid.js';
 import { exponentialIntegral } from './exponential-integrals.js';

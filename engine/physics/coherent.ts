@@ -85,7 +85,7 @@ const doubleView = new Float64Array(1);
 const wordView = new Uint32Array(doubleView.buffer);
 
 /**
- * v = (1 − cos θ)/2 of a coherent scattering. The loop of slab-kernel.ts has a copy of it.
+ * v = (1 − cos θ)/2 of a coherent scattering. The loop of slab/kernel.ts has a copy of it.
  *
  * @param table tables of all materials
  * @param base first number of the material in `table`

@@ -1,7 +1,7 @@
 /** Deep penetration against published buildup factors and tenth-value layers, and dose rates against constants. */
 import { describe, expect, it } from 'vitest';
 import { findNuclide, nuclideLines, resolveMaterial } from '../../materials/index.js';
-import { attenuationPerCm } from '../../engine/deep-grid.js';
+import { attenuationPerCm } from '../../engine/deep/grid.js';
 import { compile } from '../../engine/compile.js';
 import type { Setup } from '../../engine/setup.js';
 import { publishedRows } from '../published/csv.js';

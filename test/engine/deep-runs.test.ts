@@ -1,10 +1,10 @@
 /** Whole runs of deep transport: which setups it takes, same bits however it is run, scaling, profiles. */
 import { describe, expect, it } from 'vitest';
 import { compile } from '../../engine/compile.js';
-import { isDeep } from '../../engine/deep-choice.js';
+import { isDeep } from '../../engine/deep/choice.js';
 import { simulate } from '../../engine/simulate.js';
 import type { Setup, Transport } from '../../engine/setup.js';
-import { attenuationPerCm } from '../../engine/deep-grid.js';
+import { attenuationPerCm } from '../../engine/deep/grid.js';
 import { curveOf, equilibriumTenth, layerBetween, thicknessFor } from '../../engine/attenuation-curve.js';
 import { deepSetup, figureIn, playDeep, type DeepCase } from './deep-run.js';
 import { expectNear } from './goodness.js';

@@ -4,7 +4,7 @@ import { doseCoefficient } from '../../materials/index.js';
 import { turn, U, V, W, X, Y, Z } from '../../geometry/index.js';
 import type { DosePoint } from '../../engine/setup.js';
 import { compile } from '../../engine/compile.js';
-import { attenuationPerCm } from '../../engine/deep-grid.js';
+import { attenuationPerCm } from '../../engine/deep/grid.js';
 import { cellOf } from '../../engine/energy-grid.js';
 import { interact, Site } from '../../engine/physics/interact.js';
 import { nextOpenUniform, nextUniform, seedStream } from '../../engine/random.js';

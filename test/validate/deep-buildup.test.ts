@@ -1,6 +1,6 @@
 /** Exposure buildup of a plane isotropic source against published factors of point sources, folded into the plane. */
 import { describe, expect, it } from 'vitest';
-import { attenuationPerCm } from '../../engine/deep-grid.js';
+import { attenuationPerCm } from '../../engine/deep/grid.js';
 import { compile } from '../../engine/compile.js';
 import { planeBuildup, publishedBuildup } from '../engine/buildup.js';
 import { deepSetup, playDeep, type DeepCase } from '../engine/deep-run.js';

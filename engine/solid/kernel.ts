@@ -6,20 +6,20 @@
  * second is followed, from a point of the way drawn by the law of flight. A pulse can come of the second alone, and
  * after the first collision everything is as nature makes it: so every pulse height keeps its exact expectation.
  */
-import { AnalogDose } from './analog-dose.js';
-import { clearance, turn } from '../geometry/index.js';
-import type { BatchTally } from './batch-tally.js';
-import { lineEnergyKeV, pickLine } from './emission.js';
-import { cellOf } from './energy-grid.js';
-import { depthIndex } from './local-cutoff.js';
-import { ENERGY, WEIGHT } from './photon.js';
-import { interact, type Site } from './physics/interact.js';
-import type { Problem } from './problem.js';
-import { nextUniform } from './random.js';
-import { FirstFlight, fly } from './solid-flight.js';
-import { SolidScores } from './solid-scores.js';
-import { SolidStart, startInSolid, type SolidProblem } from './solid-source.js';
-import { WaitingPhotons } from './waiting-photons.js';
+import { AnalogDose } from '../analog-dose.js';
+import { clearance, turn } from '../../geometry/index.js';
+import type { BatchTally } from '../batch-tally.js';
+import { lineEnergyKeV, pickLine } from '../emission.js';
+import { cellOf } from '../energy-grid.js';
+import { depthIndex } from '../local-cutoff.js';
+import { ENERGY, WEIGHT } from '../photon.js';
+import { interact, type Site } from '../physics/interact.js';
+import type { Problem } from '../problem.js';
+import { nextUniform } from '../random.js';
+import { FirstFlight, fly } from './flight.js';
+import { SolidScores } from './scores.js';
+import { SolidStart, startInSolid, type SolidProblem } from './source.js';
+import { WaitingPhotons } from '../waiting-photons.js';
 
 /** Plays `histories` histories with the stream in `site.random` into `tally`. */
 export function runSolidBatch(problem: Problem, histories: number, site: Site, tally: BatchTally): void {

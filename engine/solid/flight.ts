@@ -16,12 +16,12 @@ import {
   move,
   traceThrough,
   type SolidStack,
-} from '../geometry/index.js';
-import { nextOpticalLength } from './optical-length.js';
-import { ENERGY } from './photon.js';
-import type { Site } from './physics/interact.js';
-import { CELL_LENGTH, type Problem } from './problem.js';
-import { nextOpenUniform, type StreamState } from './random.js';
+} from '../../geometry/index.js';
+import { nextOpticalLength } from '../optical-length.js';
+import { ENERGY } from '../photon.js';
+import type { Site } from '../physics/interact.js';
+import { CELL_LENGTH, type Problem } from '../problem.js';
+import { nextOpenUniform, type StreamState } from '../random.js';
 
 /**
  * Flies a photon from inside `layer` to its next collision or out of the stack.

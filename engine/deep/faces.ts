@@ -5,10 +5,10 @@
  * Near a face 1/|w| has no bound, and drawing w as it comes gives dose a variance without end. There the azimuth of the
  * score is drawn anew, with a density in proportion to 1/(|w| + τ) that cancels it.
  */
-import type { DeepScores } from './deep-scores.js';
-import { DOSE_LINE, type Problem } from './problem.js';
-import { nextUniform, type StreamState } from './random.js';
-import { FIGURE } from './tally-layout.js';
+import type { DeepScores } from './scores.js';
+import { DOSE_LINE, type Problem } from '../problem.js';
+import { nextUniform, type StreamState } from '../random.js';
+import { FIGURE } from '../tally-layout.js';
 
 /** Optical depth of a face within which grazing photons are drawn anew; farther off exp(−τ/w)/w stays below 0.8. */
 const NEAR_FACE = 0.5;

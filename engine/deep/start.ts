@@ -6,9 +6,9 @@ import {
   cosineBin,
   placeInGroups,
   type DeepGrid,
-} from './deep-grid.js';
-import type { Emitted } from './deep-sweep.js';
-import type { Problem } from './problem.js';
+} from './grid.js';
+import type { Emitted } from './sweep.js';
+import type { Problem } from '../problem.js';
 
 /** More source energies than these are gathered into groups. */
 const MAX_ENERGIES = 16;

@@ -2,7 +2,7 @@
  * Slices of a stack for the coarse grid of deep transport: even inside a layer, for the photons that get farthest, and
  * ever finer towards its faces, for soft photons that get out from there alone.
  */
-import { sharedDoubles, sharedInts } from './problem.js';
+import { sharedDoubles, sharedInts } from '../problem.js';
 
 /** Optical thickness of a slice for the most penetrating photons, and of one at a face for the least. */
 const SLICE_DEPTH = 0.35;

@@ -1,5 +1,5 @@
 /** Optical depths from a place in the stack to its faces, along the axis. */
-import { CELL_LENGTH, type Problem } from './problem.js';
+import { CELL_LENGTH, type Problem } from '../problem.js';
 
 /** From depth z in a layer to the far face, for photons of an energy in a cell of the energy grid. */
 export function depthToFar(

@@ -1,16 +1,16 @@
 /**
  * Source photons of deep transport, in space: dose points need their place across the axis too. Photons are drawn by
- * their worth (deep-start-plan.ts), those of points and discs also straight towards the dose points behind the stack.
+ * their worth (deep/start-plan.ts), those of points and discs also straight towards the dose points behind the stack.
  */
-import { placeInBeam, placeInDisc, turn, U, V, W, X, Y, Z } from '../geometry/index.js';
-import { COSINE_BINS, COSINE_BOUNDS, cosineBin } from './deep-grid.js';
-import type { DeepPlan } from './deep-pilot.js';
-import { pick } from './deep-start-plan.js';
-import { lineEnergyKeV } from './emission.js';
-import { bucketOf } from './energy-grid.js';
-import { ENERGY, WEIGHT } from './photon.js';
-import type { Problem } from './problem.js';
-import { nextOpenUniform, nextUniform, type StreamState } from './random.js';
+import { placeInBeam, placeInDisc, turn, U, V, W, X, Y, Z } from '../../geometry/index.js';
+import { COSINE_BINS, COSINE_BOUNDS, cosineBin } from './grid.js';
+import type { DeepPlan } from './pilot.js';
+import { pick } from './start-plan.js';
+import { lineEnergyKeV } from '../emission.js';
+import { bucketOf } from '../energy-grid.js';
+import { ENERGY, WEIGHT } from '../photon.js';
+import type { Problem } from '../problem.js';
+import { nextOpenUniform, nextUniform, type StreamState } from '../random.js';
 
 /** Part of the photons of a point or disc that are sent towards dose points, where there are any behind the stack. */
 const AIMED_PART = 0.5;

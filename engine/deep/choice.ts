@@ -1,12 +1,12 @@
 /** Which setups deep transport is for, and what it needs compiled. */
-import { materialCoefficients } from '../materials/index.js';
-import { makeDeepPlan, type DeepPlan } from './deep-pilot.js';
-import type { PointPlan } from './deep-points.js';
-import { makePointPlan } from './deep-point-plan.js';
-import { EngineError } from './errors.js';
-import type { Problem } from './problem.js';
-import type { Setup } from './setup.js';
-import { uncollidedConstants, type Constants } from './uncollided.js';
+import { materialCoefficients } from '../../materials/index.js';
+import { makeDeepPlan, type DeepPlan } from './pilot.js';
+import type { PointPlan } from './points.js';
+import { makePointPlan } from './point-plan.js';
+import { EngineError } from '../errors.js';
+import type { Problem } from '../problem.js';
+import type { Setup } from '../setup.js';
+import { uncollidedConstants, type Constants } from '../uncollided.js';
 
 /** What deep transport adds to a problem. */
 export interface DeepProblem {

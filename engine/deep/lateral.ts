@@ -2,7 +2,7 @@
  * What a place across the axis is worth to the dose points. The coarse grid knows depth alone; a photon far aside of the
  * line of sight of a point is worth less to it: by the inverse square and by the longer way out.
  */
-import { U, V, W, X, Y, Z } from '../geometry/index.js';
+import { U, V, W, X, Y, Z } from '../../geometry/index.js';
 
 /** Worth factors at dose points: numbers that stand for the points. */
 export interface LateralPlan {

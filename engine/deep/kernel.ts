@@ -2,34 +2,34 @@
  * The history loop of deep transport, for laterally infinite stacks and figures that need no pulse heights.
  *
  * - A flight ends in a collision inside the stack: what would leave without one was scored when the photon set out. Its
- *   length is drawn so that collisions are spread to where they matter (deep-pilot.ts); the weight makes up for it.
+ *   length is drawn so that collisions are spread to where they matter (deep/pilot.ts); the weight makes up for it.
  * - A collision lets the photon survive with the share that scatters; absorption is played with its probability, for
  *   what it deposits and sets free.
  * - A photon that sets out scores its expected contribution, then is split or ended by its importance: weight times
  *   importance stays near 1.
  * All of it leaves every mean unchanged, whatever the importances are.
  */
-import { turn, U, V, W, X, Y, Z } from '../geometry/index.js';
-import type { BatchTally } from './batch-tally.js';
-import { COSINE_BINS, cosineBin } from './deep-grid.js';
-import { Flight } from './deep-flight.js';
-import { DepthScores } from './deep-depths.js';
-import { Lateral } from './deep-lateral.js';
-import { FaceScores } from './deep-faces.js';
-import { depthToFar, depthToFront } from './deep-paths.js';
-import { DEEP_LENGTH, DEEPEST, DeepPhotons } from './deep-photons.js';
-import { PointScores } from './deep-points.js';
-import { DeepScores } from './deep-scores.js';
-import { DeepSource, head } from './deep-source.js';
-import { bucketOf, cellOf } from './energy-grid.js';
-import { depthIndex } from './local-cutoff.js';
-import { PAIR_THRESHOLD_KEV } from './constants.js';
-import { composeCosines, forward } from './physics/bremsstrahlung.js';
-import { COHERENT, INCOHERENT, interactAs, PAIR, PHOTOELECTRIC, type Site } from './physics/interact.js';
-import { ENERGY, WEIGHT } from './photon.js';
-import { CELL_LENGTH, type Problem } from './problem.js';
-import { nextUniform } from './random.js';
-import { FIGURE } from './tally-layout.js';
+import { turn, U, V, W, X, Y, Z } from '../../geometry/index.js';
+import type { BatchTally } from '../batch-tally.js';
+import { COSINE_BINS, cosineBin } from './grid.js';
+import { Flight } from './flight.js';
+import { DepthScores } from './depths.js';
+import { Lateral } from './lateral.js';
+import { FaceScores } from './faces.js';
+import { depthToFar, depthToFront } from './paths.js';
+import { DEEP_LENGTH, DEEPEST, DeepPhotons } from './photons.js';
+import { PointScores } from './points.js';
+import { DeepScores } from './scores.js';
+import { DeepSource, head } from './source.js';
+import { bucketOf, cellOf } from '../energy-grid.js';
+import { depthIndex } from '../local-cutoff.js';
+import { PAIR_THRESHOLD_KEV } from '../constants.js';
+import { composeCosines, forward } from '../physics/bremsstrahlung.js';
+import { COHERENT, INCOHERENT, interactAs, PAIR, PHOTOELECTRIC, type Site } from '../physics/interact.js';
+import { ENERGY, WEIGHT } from '../photon.js';
+import { CELL_LENGTH, type Problem } from '../problem.js';
+import { nextUniform } from '../random.js';
+import { FIGURE } from '../tally-layout.js';
 
 /** Weight times importance is split above, left to chance below; a photon that is left goes on with the middle. */
 const SPLIT_ABOVE = 2;

@@ -2,19 +2,19 @@
  * The history loop for laterally infinite stacks: analog transport in depth z and direction cosine w alone.
  *
  * Hot code. State lives in locals; the random stream (alea, see random.ts), the logarithm of the flight, the cosine of
- * the azimuth, scattering and Doppler broadening are written out, because a call for each costs as much
- * as the work around it (measured: through `interact` plain physics loses a quarter of its speed, all physics half).
- * What is rarer is played by the functions of interact.ts. A test holds this loop against them.
+ * the azimuth, scattering and Doppler broadening are written out, because a call for each costs as much as the work
+ * around it (measured: through `interact` plain physics loses a quarter of its speed, all physics half). What is rarer is
+ * played by the functions of interact.ts. A test holds this loop against them.
  */
-import { AnalogDose } from './analog-dose.js';
-import { BUCKET_OFFSET, BUCKET_SHIFT } from './energy-grid.js';
-import { MAX_TOUCHED, type BatchTally } from './batch-tally.js';
-import { scoreCoincidences } from './coincidence.js';
-import { ELECTRON_REST_KEV, HC_KEV_ANGSTROM, PAIR_THRESHOLD_KEV } from './constants.js';
-import { lineEnergyKeV, pickLine } from './emission.js';
-import { AZIMUTH_COSINE, AZIMUTH_STEPS, LOG_INVERSE, LOG_NEGATIVE, POWER_OF_TWO } from './lookup-tables.js';
-import { depthIndex, RADIATION_STEPS } from './local-cutoff.js';
-import { COLUMNS, ROW_LENGTH, ROW_OFFSET, ROW_SHIFT } from './physics/incoherent.js';
+import { AnalogDose } from '../analog-dose.js';
+import { BUCKET_OFFSET, BUCKET_SHIFT } from '../energy-grid.js';
+import { MAX_TOUCHED, type BatchTally } from '../batch-tally.js';
+import { scoreCoincidences } from '../coincidence.js';
+import { ELECTRON_REST_KEV, HC_KEV_ANGSTROM, PAIR_THRESHOLD_KEV } from '../constants.js';
+import { lineEnergyKeV, pickLine } from '../emission.js';
+import { AZIMUTH_COSINE, AZIMUTH_STEPS, LOG_INVERSE, LOG_NEGATIVE, POWER_OF_TWO } from '../lookup-tables.js';
+import { depthIndex, RADIATION_STEPS } from '../local-cutoff.js';
+import { COLUMNS, ROW_LENGTH, ROW_OFFSET, ROW_SHIFT } from '../physics/incoherent.js';
 import {
   COHERENT_GUIDE,
   COHERENT_NODES,
@@ -22,13 +22,13 @@ import {
   TOP_OFFSET,
   TOP_PLACE,
   TOP_SHIFT,
-} from './physics/coherent.js';
-import { absorb, producePair, radiateRecoil, type Site } from './physics/interact.js';
-import { MAX_TRIES, MOMENTUM_LIMIT, PROFILE_STEPS } from './physics/doppler.js';
-import { CELL_LENGTH, type Problem } from './problem.js';
-import { ALEA_CARRY, ALEA_MULTIPLIER, nextUniform } from './random.js';
-import { startInSlab, type SlabStart } from './slab-source.js';
-import { FIGURE } from './tally-layout.js';
+} from '../physics/coherent.js';
+import { absorb, producePair, radiateRecoil, type Site } from '../physics/interact.js';
+import { MAX_TRIES, MOMENTUM_LIMIT, PROFILE_STEPS } from '../physics/doppler.js';
+import { CELL_LENGTH, type Problem } from '../problem.js';
+import { ALEA_CARRY, ALEA_MULTIPLIER, nextUniform } from '../random.js';
+import { startInSlab, type SlabStart } from './source.js';
+import { FIGURE } from '../tally-layout.js';
 
 /** Photons set free in one history that may wait at a time; more is an error. */
 const STACK_DEPTH = 1024;

@@ -1,6 +1,6 @@
 /** Where and in which direction a photon starts in a laterally infinite stack: depth and direction cosine. */
-import type { Problem } from './problem.js';
-import { nextOpenUniform, type StreamState } from './random.js';
+import type { Problem } from '../problem.js';
+import { nextOpenUniform, type StreamState } from '../random.js';
 
 /** Start of a history; made once per batch and reused. */
 export interface SlabStart {

@@ -3,7 +3,7 @@
  * photons in each group and direction bin. It is found by playing collisions with the very sampler of the history
  * loops, so that whatever physics is on is in it.
  */
-import { cellOf } from './energy-grid.js';
+import { cellOf } from '../energy-grid.js';
 import {
   attenuationPerCm,
   COSINE_BINS,
@@ -11,10 +11,10 @@ import {
   cosineBin,
   placeInGroups,
   type DeepGrid,
-} from './deep-grid.js';
-import { interact, Site } from './physics/interact.js';
-import type { Problem } from './problem.js';
-import { seedStream } from './random.js';
+} from './grid.js';
+import { interact, Site } from '../physics/interact.js';
+import type { Problem } from '../problem.js';
+import { seedStream } from '../random.js';
 
 /** Collisions played for each group: single elements are then good to a few per cent, sums to one. */
 const PLAYED = 1500;

@@ -22,11 +22,11 @@ import {
   turn,
   type Edge,
   type SolidStack,
-} from '../geometry/index.js';
-import { EngineError } from './errors.js';
-import { PHOTON_LENGTH, WEIGHT } from './photon.js';
-import { nextOpenUniform, nextUniform, type StreamState } from './random.js';
-import type { Layer, Setup, SourceShape } from './setup.js';
+} from '../../geometry/index.js';
+import { EngineError } from '../errors.js';
+import { PHOTON_LENGTH, WEIGHT } from '../photon.js';
+import { nextOpenUniform, nextUniform, type StreamState } from '../random.js';
+import type { Layer, Setup, SourceShape } from '../setup.js';
 
 /** 1 − cos of a "cone" that is the whole sphere. */
 const SPHERE = 2;

@@ -2,10 +2,10 @@
  * Scores of deep transport: sums of weights within a history, closed into sums, squares and the moments that tell how
  * far a figure can be relied on.
  */
-import { MAX_TOUCHED, type BatchTally } from './batch-tally.js';
-import { MOMENT_PLACES } from './dose-layout.js';
-import type { Constants } from './uncollided.js';
-import { FIGURE, type TallyLayout } from './tally-layout.js';
+import { MAX_TOUCHED, type BatchTally } from '../batch-tally.js';
+import { MOMENT_PLACES } from '../dose-layout.js';
+import type { Constants } from '../uncollided.js';
+import { FIGURE, type TallyLayout } from '../tally-layout.js';
 
 export class DeepScores {
   private readonly layout: TallyLayout;

@@ -2,8 +2,8 @@
  * How source photons are drawn so that all are worth the same: line, depth and direction in proportion to their share
  * times their importance. The weight makes up for it. A tenth are drawn by their share alone, which bounds the weights.
  */
-import { COSINE_BINS, COSINE_BOUNDS, placeInGroups, type DeepGrid } from './deep-grid.js';
-import { sharedDoubles, type Problem } from './problem.js';
+import { COSINE_BINS, COSINE_BOUNDS, placeInGroups, type DeepGrid } from './grid.js';
+import { sharedDoubles, type Problem } from '../problem.js';
 
 /** Part drawn by the shares alone. */
 const ANALOG_PART = 0.1;

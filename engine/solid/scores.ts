@@ -1,11 +1,11 @@
 /** What one history of a stack with edges scores: photons that leave, energy that stays, pulses. */
-import { LEFT_FAR, LEFT_SIDE, W } from '../geometry/index.js';
-import type { AnalogDose } from './analog-dose.js';
-import { addFigure, closeHistory, MAX_TOUCHED, type BatchTally } from './batch-tally.js';
-import { cellOf, type EnergyGrid } from './energy-grid.js';
-import { ENERGY, WEIGHT } from './photon.js';
-import { scoreCoincidences } from './coincidence.js';
-import { binOf, FIGURE, FULL_ENERGY, type TallyLayout } from './tally-layout.js';
+import { LEFT_FAR, LEFT_SIDE, W } from '../../geometry/index.js';
+import type { AnalogDose } from '../analog-dose.js';
+import { addFigure, closeHistory, MAX_TOUCHED, type BatchTally } from '../batch-tally.js';
+import { cellOf, type EnergyGrid } from '../energy-grid.js';
+import { ENERGY, WEIGHT } from '../photon.js';
+import { scoreCoincidences } from '../coincidence.js';
+import { binOf, FIGURE, FULL_ENERGY, type TallyLayout } from '../tally-layout.js';
 
 /** Surfaces by number: far face, front face, side (LEFT_FAR − how it left). */
 const SURFACES = 3;

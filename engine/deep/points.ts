@@ -2,19 +2,19 @@
  * Next-event scores at dose points: each collision scores what it would send straight to the point, density per sr of
  * its outcome times exp(−τ)/r², for each process that can happen there and with the energy the photon would have.
  */
-import { U, V, W, X, Y, Z } from '../geometry/index.js';
-import type { LateralPlan } from './deep-lateral.js';
-import { depthToFar, depthToFront } from './deep-paths.js';
-import type { DeepScores } from './deep-scores.js';
-import { cellOf } from './energy-grid.js';
-import { coherentDensity, incoherentDensity } from './physics/angular-density.js';
-import { forwardDensity } from './physics/bremsstrahlung.js';
-import { sampleDoppler } from './physics/doppler.js';
-import type { Site } from './physics/interact.js';
-import { comptonEnergyRatio } from './physics/klein-nishina.js';
-import { ENERGY } from './photon.js';
-import { DOSE_LINE, type Problem } from './problem.js';
-import { nextUniform } from './random.js';
+import { U, V, W, X, Y, Z } from '../../geometry/index.js';
+import type { LateralPlan } from './lateral.js';
+import { depthToFar, depthToFront } from './paths.js';
+import type { DeepScores } from './scores.js';
+import { cellOf } from '../energy-grid.js';
+import { coherentDensity, incoherentDensity } from '../physics/angular-density.js';
+import { forwardDensity } from '../physics/bremsstrahlung.js';
+import { sampleDoppler } from '../physics/doppler.js';
+import type { Site } from '../physics/interact.js';
+import { comptonEnergyRatio } from '../physics/klein-nishina.js';
+import { ENERGY } from '../photon.js';
+import { DOSE_LINE, type Problem } from '../problem.js';
+import { nextUniform } from '../random.js';
 
 /** What workers need to score at dose points. */
 export interface PointPlan {

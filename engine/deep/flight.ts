@@ -3,14 +3,14 @@
  * chance of a collision there times what a collision is worth there: then all collisions bring about the same. A part
  * of the flights is drawn by the chance alone, which bounds the weights. The weight makes up for both.
  */
-import { W, Z } from '../geometry/index.js';
-import { COSINE_BINS, COSINES, cosineBin, type DeepGrid } from './deep-grid.js';
-import { depthToFar, depthToFront } from './deep-paths.js';
-import { bucketOf } from './energy-grid.js';
-import { GUIDE_STEPS } from './deep-slices.js';
-import { ENERGY } from './photon.js';
-import { CELL_LENGTH, sharedDoubles, type Problem } from './problem.js';
-import { nextOpenUniform, nextUniform, type StreamState } from './random.js';
+import { W, Z } from '../../geometry/index.js';
+import { COSINE_BINS, COSINES, cosineBin, type DeepGrid } from './grid.js';
+import { depthToFar, depthToFront } from './paths.js';
+import { bucketOf } from '../energy-grid.js';
+import { GUIDE_STEPS } from './slices.js';
+import { ENERGY } from '../photon.js';
+import { CELL_LENGTH, sharedDoubles, type Problem } from '../problem.js';
+import { nextOpenUniform, nextUniform, type StreamState } from '../random.js';
 
 /** Part of the flights drawn by the chance of a collision alone. */
 const ANALOG_PART = 0.1;

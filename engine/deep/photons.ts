@@ -1,5 +1,5 @@
 /** Photons of a history that wait, in any number of equal copies: what splitting makes. */
-import { PHOTON_LENGTH } from './photon.js';
+import { PHOTON_LENGTH } from '../photon.js';
 
 /** A photon's greatest depth so far, its own and that of the photons it comes from. */
 export const DEEPEST = PHOTON_LENGTH;

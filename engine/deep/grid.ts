@@ -3,9 +3,9 @@
  * the layers, groups of energy, bins of the direction cosine. It steers which photons are followed and where they
  * collide; no result depends on it but by its statistical error.
  */
-import { bucketStartKeV, cellOf } from './energy-grid.js';
-import { sliceStack } from './deep-slices.js';
-import { CELL_LENGTH, sharedDoubles, sharedInts, type Problem } from './problem.js';
+import { bucketStartKeV, cellOf } from '../energy-grid.js';
+import { sliceStack } from './slices.js';
+import { CELL_LENGTH, sharedDoubles, sharedInts, type Problem } from '../problem.js';
 
 /**
  * Bounds of the bins of |w|, in 64ths: finest along the axis, where the photons that get through fly, so that the

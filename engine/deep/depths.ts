@@ -5,12 +5,12 @@
  * Dose behind a layer that ended in the slice is scored in the same run: photons that reach the slice without ever having
  * been deeper would have come as far without all that lies deeper, and would have left.
  */
-import { W, Z } from '../geometry/index.js';
-import { DEEPEST } from './deep-photons.js';
-import type { DeepScores } from './deep-scores.js';
-import { ENERGY, WEIGHT } from './photon.js';
-import { CELL_LENGTH, DOSE_LINE, type Problem } from './problem.js';
-import { nextUniform, type StreamState } from './random.js';
+import { W, Z } from '../../geometry/index.js';
+import { DEEPEST } from './photons.js';
+import type { DeepScores } from './scores.js';
+import { ENERGY, WEIGHT } from '../photon.js';
+import { CELL_LENGTH, DOSE_LINE, type Problem } from '../problem.js';
+import { nextUniform, type StreamState } from '../random.js';
 
 /** Optical path after which half of the flights are followed on, with twice the weight. */
 const FOLLOWED_PATH = 3;

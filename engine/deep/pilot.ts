@@ -7,16 +7,16 @@
  * sampling, J. C. Wagner and A. Haghighat, Nucl. Sci. Eng. 128 (1998) 186, with the forward weighing of Wagner,
  * Peplow and Mosher, Nucl. Sci. Eng. 176 (2014) 37). The pilot depends on the setup and its seed alone.
  */
-import { doseCoefficient } from '../materials/index.js';
-import { makeFlightTables } from './deep-flight.js';
-import { collisionMatrices } from './deep-collisions.js';
-import { COSINE_BINS, COSINES, makeDeepGrid, type DeepGrid } from './deep-grid.js';
-import { makeStartPlan, type StartPlan } from './deep-start-plan.js';
-import { emittedOf } from './deep-start.js';
-import { sweepBackward, sweepForward, type ForwardFigures, type Response } from './deep-sweep.js';
-import { topEnergyKeV } from './emission.js';
-import { sharedDoubles, type Problem } from './problem.js';
-import type { DoseQuantity, Tally } from './setup.js';
+import { doseCoefficient } from '../../materials/index.js';
+import { makeFlightTables } from './flight.js';
+import { collisionMatrices } from './collisions.js';
+import { COSINE_BINS, COSINES, makeDeepGrid, type DeepGrid } from './grid.js';
+import { makeStartPlan, type StartPlan } from './start-plan.js';
+import { emittedOf } from './start.js';
+import { sweepBackward, sweepForward, type ForwardFigures, type Response } from './sweep.js';
+import { topEnergyKeV } from '../emission.js';
+import { sharedDoubles, type Problem } from '../problem.js';
+import type { DoseQuantity, Tally } from '../setup.js';
 
 /** Kind of score that pilot figures stand for: a dose quantity, or energy where none is asked for. */
 type Scored = DoseQuantity | 'energy';
@@ -30,7 +30,7 @@ export interface DeepPlan {
   readonly topImportance: Float64Array;
   /** How source photons are drawn. */
   readonly start: StartPlan;
-  /** Where flights end; see deep-flight.ts. */
+  /** Where flights end; see deep/flight.ts. */
   readonly flights: Float64Array;
   /** Mean score per source photon at the far and the front face, roughly: what is small against it is left to chance. */
   readonly farScore: number;

@@ -1,13 +1,13 @@
 /** What scoring at dose points needs compiled. */
-import { COHERENT_LENGTH } from './physics/coherent.js';
-import { coherentNorms, coherentRows } from './physics/angular-density.js';
-import { makeLateralPlan } from './deep-lateral-plan.js';
-import type { DeepPlan } from './deep-pilot.js';
-import type { PointPlan } from './deep-points.js';
-import { topEnergyKeV } from './emission.js';
-import { sharedDoubles, sharedInts, type Problem } from './problem.js';
-import type { DosePoint } from './setup.js';
-import type { Constants } from './uncollided.js';
+import { COHERENT_LENGTH } from '../physics/coherent.js';
+import { coherentNorms, coherentRows } from '../physics/angular-density.js';
+import { makeLateralPlan } from './lateral-plan.js';
+import type { DeepPlan } from './pilot.js';
+import type { PointPlan } from './points.js';
+import { topEnergyKeV } from '../emission.js';
+import { sharedDoubles, sharedInts, type Problem } from '../problem.js';
+import type { DosePoint } from '../setup.js';
+import type { Constants } from '../uncollided.js';
 
 /** Contributions below this share of the figure expected are left to chance. */
 const SMALL_SHARE = 1e-3;

@@ -3,8 +3,8 @@
  * what a photon is worth (backwards). Inside a slice what is emitted, or what a collision is worth, counts as even.
  * The two are exact transposes of one another, so that either way gives the same mean score.
  */
-import type { CollisionMatrix } from './deep-collisions.js';
-import { COSINE_BINS, COSINES, type DeepGrid } from './deep-grid.js';
+import type { CollisionMatrix } from './collisions.js';
+import { COSINE_BINS, COSINES, type DeepGrid } from './grid.js';
 
 /** Rounds over one group, whose photons may scatter into it again; enough where few are absorbed. */
 const MAX_ROUNDS = 60;

@@ -1,16 +1,16 @@
 /** Worth across the axis, compiled: how much each dose point counts, by a sample of source photons. */
-import { W } from '../geometry/index.js';
-import { attenuationPerCm, COSINE_BINS, cosineBin } from './deep-grid.js';
-import { Lateral, type LateralPlan } from './deep-lateral.js';
-import { DEEP_LENGTH } from './deep-photons.js';
-import type { DeepPlan } from './deep-pilot.js';
-import { DeepSource } from './deep-source.js';
-import { topEnergyKeV } from './emission.js';
-import { bucketOf } from './energy-grid.js';
-import { ENERGY, WEIGHT } from './photon.js';
-import { sharedDoubles, type Problem } from './problem.js';
-import { seedStream } from './random.js';
-import type { DosePoint } from './setup.js';
+import { W } from '../../geometry/index.js';
+import { attenuationPerCm, COSINE_BINS, cosineBin } from './grid.js';
+import { Lateral, type LateralPlan } from './lateral.js';
+import { DEEP_LENGTH } from './photons.js';
+import type { DeepPlan } from './pilot.js';
+import { DeepSource } from './source.js';
+import { topEnergyKeV } from '../emission.js';
+import { bucketOf } from '../energy-grid.js';
+import { ENERGY, WEIGHT } from '../photon.js';
+import { sharedDoubles, type Problem } from '../problem.js';
+import { seedStream } from '../random.js';
+import type { DosePoint } from '../setup.js';
 
 /** Part of the effort that is not aimed at points. */
 const EVERYWHERE = 0.2;
