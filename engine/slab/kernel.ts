@@ -137,8 +137,9 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
     let reflectedKeV = 0;
 
     for (;;) {
-      // One photon, flight by flight. No call stands in this inner loop: a call makes the compiler keep every local in
-      // memory, which costs a third of the speed. What needs one leaves the loop and comes back.
+      // One photon, flight by flight. No call stands in this inner loop but those of functions so small that the compiler
+      // puts them in their place: a call makes it keep every local in memory, which costs a third of the speed. What needs
+      // one leaves the loop and comes back.
       let event = 0;
       let cell = 0;
       let bucket = 0;
