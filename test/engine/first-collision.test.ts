@@ -5,9 +5,10 @@
 import { describe, expect, it } from 'vitest';
 import { compile } from '../../engine/compile.js';
 import { cellOf } from '../../engine/energy-grid.js';
+import { sampleCoherent } from '../../engine/physics/coherent.js';
 import { interact, Site } from '../../engine/physics/interact.js';
 import type { Problem } from '../../engine/problem.js';
-import { seedStream } from '../../engine/random.js';
+import { nextOpenUniform, nextUniform, seedStream } from '../../engine/random.js';
 import type { Physics } from '../../engine/setup.js';
 import { chiSquareSigmas, expectNear, integrate, SIGMAS } from './goodness.js';
 import { AT_ONCE_PER_CM, firstCollisionEnergyKeV, withCrossSections, withOneCollision } from './made-up.js';
@@ -190,5 +191,53 @@ describe('the short cuts of the history loop', () => {
     expect(compared).toBeGreaterThan(10);
     // Standardised χ²: a false alarm above 4 once in 3e4
     expect((chiSquare - compared) / Math.sqrt(2 * compared)).toBeLessThan(SIGMAS);
+  });
+});
+
+/** Share of photons that come back from a layer one mean free path thick in which they scatter coherently and do nothing else. */
+function comingBack(problem: Problem, energyKeV: number, angleDeg: number): number {
+  const { random } = new Site();
+  seedStream(random, `coherent ${energyKeV}/${angleDeg}`, 0);
+  const base = problem.coherentBase[problem.slotOfLayer[0]];
+  let back = 0;
+  for (let i = 0; i < HISTORIES; i++) {
+    let w = Math.cos((angleDeg * Math.PI) / 180);
+    let z = -w * Math.log(nextOpenUniform(random));
+    while (z > 0 && z < 1) {
+      const cosine = 1 - 2 * sampleCoherent(problem.coherent, base, energyKeV, random);
+      const across = Math.sqrt(Math.max(0, (1 - cosine * cosine) * (1 - w * w)));
+      w = w * cosine + across * Math.cos(Math.PI * nextUniform(random));
+      z -= w * Math.log(nextOpenUniform(random));
+    }
+    if (z <= 0) back++;
+  }
+  return back / HISTORIES;
+}
+
+describe('coherent scattering in the history loop', () => {
+  it.each([
+    { material: 'hydrogen', energyKeV: 8, angleDeg: 0 },
+    { material: 'carbon', energyKeV: 6, angleDeg: 0 },
+    { material: 'carbon', energyKeV: 6, angleDeg: 70 },
+    { material: 'germanium', energyKeV: 20, angleDeg: 0 },
+    { material: 'lead', energyKeV: 15, angleDeg: 0 },
+    { material: 'lead', energyKeV: 15, angleDeg: 70 },
+    { material: 'lead', energyKeV: 150, angleDeg: 80 },
+  ])('turns photons of $energyKeV keV in $material, at $angleDeg°, as coherent.ts does', (given) => {
+    const { material, energyKeV, angleDeg } = given;
+    const seed = `coherent ${material}`;
+    let expected = 0;
+    const played = playSlab(
+      { stack: [[material, 1]], energyKeV, physics: ALL, seed, angleDeg },
+      HISTORIES,
+      (problem) => {
+        expected = comingBack(problem, energyKeV, angleDeg);
+        return withCrossSections(problem, { perCm: 1, coherent: 1 });
+      },
+    );
+    const { mean, stdError } = figureOf(played, 'reflected');
+    expect(figureOf(played, 'transmitted').mean + mean).toBeCloseTo(1, 12);
+    // Both have this error
+    expect(Math.abs(mean - expected)).toBeLessThan(SIGMAS * Math.SQRT2 * stdError);
   });
 });
