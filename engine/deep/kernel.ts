@@ -22,7 +22,6 @@ import { PointScores } from './points.js';
 import { DeepScores } from './scores.js';
 import { DeepSource, head } from './source.js';
 import { bucketOf, cellOf } from '../energy-grid.js';
-import { depthIndex } from '../local-cutoff.js';
 import { PAIR_THRESHOLD_KEV } from '../constants.js';
 import { composeCosines, forward } from '../physics/bremsstrahlung.js';
 import { COHERENT, INCOHERENT, interactAs, PAIR, PHOTOELECTRIC, type Site } from '../physics/interact.js';
@@ -180,9 +179,7 @@ class DeepRun {
     const { boundariesCm } = problem;
     const z = photon[Z];
     const nearest = Math.min(z - boundariesCm[this.layer], boundariesCm[this.layer + 1] - z);
-    const at = depthIndex(slot, Math.max(0, TRAPPED_SHARE * nearest) * problem.densityOfSlot[slot]);
-    site.localCutoffKeV = problem.localCutoffKeV[at];
-    site.radiationStep = problem.radiationStep[at];
+    site.setCutoffs(problem, slot, Math.max(0, TRAPPED_SHARE * nearest) * problem.densityOfSlot[slot]);
   }
 
   /** Energy left by a branch, and the photons it sets free. */

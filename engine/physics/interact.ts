@@ -4,6 +4,7 @@
  */
 import { ELECTRON_REST_KEV, PAIR_THRESHOLD_KEV } from '../constants.js';
 import { bucketOf } from '../energy-grid.js';
+import { depthIndex } from '../local-cutoff.js';
 import { CELL_LENGTH, type Problem } from '../problem.js';
 import { ALEA_CARRY, nextOpenUniform, nextUniform, type StreamState } from '../random.js';
 import type { BremsstrahlungTables } from './bremsstrahlung-tables.js';
@@ -45,20 +46,11 @@ export class Site {
   readonly electronFrames = new Float64Array(2 * MAX_ELECTRON_PHOTONS);
   readonly next = () => nextOpenUniform(this.random);
 
-  /** The photon deposits all it has. */
-  end(): void {
-    this.depositedKeV = this.energyKeV;
-    this.energyKeV = 0;
-  }
-
-  /** The photon goes on with less energy, unless that is below the local cutoff. */
-  scatter(scatteredKeV: number): void {
-    if (scatteredKeV < this.localCutoffKeV) {
-      this.end();
-    } else {
-      this.depositedKeV = this.energyKeV - scatteredKeV;
-      this.energyKeV = scatteredKeV;
-    }
+  /** Sets what cannot get out from so deep in a layer (g/cm² to its nearest face); see local-cutoff.ts. */
+  setCutoffs({ localCutoffKeV, radiationStep }: Problem, slot: number, depthGPerCm2: number): void {
+    const at = depthIndex(slot, depthGPerCm2);
+    this.localCutoffKeV = localCutoffKeV[at];
+    this.radiationStep = radiationStep[at];
   }
 }
 

@@ -401,10 +401,9 @@ export function runSlabBatch(problem: Problem, histories: number, site: Site, ta
           const nearest = Math.min(z - boundariesCm[layer], boundariesCm[layer + 1] - z);
           depth = depthIndex(slot, nearest * densityOfSlot[slot]);
         }
-        const lowestKeV = full ? localCutoffKeV[depth] : cutoffKeV;
         secondaries.count = 0;
         site.energyKeV = energyKeV;
-        site.localCutoffKeV = lowestKeV;
+        site.localCutoffKeV = localCutoffKeV[depth];
         site.radiationStep = radiationStep[depth];
         if (event === ABSORBING) {
           absorb(problem, site, slot, cell, s2);

@@ -11,7 +11,6 @@ import { clearance, turn } from '../../geometry/index.js';
 import type { BatchTally } from '../batch-tally.js';
 import { lineEnergyKeV, pickLine } from '../emission.js';
 import { cellOf } from '../energy-grid.js';
-import { depthIndex } from '../local-cutoff.js';
 import { ENERGY, WEIGHT } from '../photon.js';
 import { interact, type Site } from '../physics/interact.js';
 import type { Problem } from '../problem.js';
@@ -69,7 +68,7 @@ export function runSolidBatch(problem: Problem, histories: number, site: Site, t
         untouched = false;
         site.energyKeV = photon[ENERGY];
         const slot = slotOfLayer[layer];
-        setLocalCutoff(problem, site, slot, clearance(stack, layer, photon));
+        site.setCutoffs(problem, slot, clearance(stack, layer, photon) * problem.densityOfSlot[slot]);
         interact(problem, site, slot, cell);
         if (site.depositedKeV > 0) scores.deposit(layer, site.depositedKeV);
         if (secondaries.count > 0) waiting.add(secondaries, photon, layer, random);
@@ -89,11 +88,4 @@ export function runSolidBatch(problem: Problem, histories: number, site: Site, t
     scores.close(photon);
   }
   dose?.closeBatch(histories);
-}
-
-/** Sets the energy below which a photon cannot get out of its layer from here (see local-cutoff.ts). */
-function setLocalCutoff(problem: Problem, site: Site, slot: number, clearanceCm: number): void {
-  const at = depthIndex(slot, clearanceCm * problem.densityOfSlot[slot]);
-  site.localCutoffKeV = problem.localCutoffKeV[at];
-  site.radiationStep = problem.radiationStep[at];
 }

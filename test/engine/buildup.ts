@@ -1,7 +1,58 @@
 /** Published buildup factors of a point source, and what a plane source makes of them. */
+import { compile } from '../../engine/compile.js';
+import { attenuationPerCm } from '../../engine/deep/grid.js';
 import { exponentialIntegral } from '../../engine/exponential-integrals.js';
 import { publishedRows } from '../published/csv.js';
+import { deepSetup, playDeep } from './deep-run.js';
 import { integrate } from './goodness.js';
+import { ALL } from './slab-run.js';
+
+/** As the published factors: neither coherent scattering nor binding nor bremsstrahlung. */
+const PHYSICS = { ...ALL, coherent: false, boundIncoherent: false, doppler: false, bremsstrahlung: false };
+/** Matter behind the source, mean free paths, and slices to a mean free path. */
+const BACKING = 8;
+const PER_PATH = 5;
+
+export interface BuildupRun {
+  readonly medium: string;
+  readonly energyKeV: number;
+  /** Thickness in front of the source, mean free paths. */
+  readonly depth: number;
+  readonly seed: string;
+  readonly histories: number;
+}
+
+/** Plays a plane isotropic source deep in matter: air kerma buildup, with its standard error, so many mean free paths away. */
+export function playBuildup({ medium, energyKeV, depth, seed, histories }: BuildupRun) {
+  const probe = compile(deepSetup({ stack: [[medium, 1]], energyKeV, physics: PHYSICS, seed }, 1, 'analog'));
+  const pathCm = 1 / attenuationPerCm(probe, 0, energyKeV);
+  const played = playDeep(
+    {
+      stack: [
+        [medium, BACKING * pathCm],
+        [medium, 1e-3 * pathCm],
+        [medium, depth * pathCm],
+      ],
+      energyKeV,
+      physics: PHYSICS,
+      shape: { kind: 'embedded', layer: 'l1' },
+      depth: { layer: 'l2', bins: depth * PER_PATH },
+      seed,
+    },
+    histories,
+  );
+  const rows = (quantity: string) => played.depth.filter((row) => row.quantity === quantity);
+  const [whole, uncollided] = [rows('air_kerma'), rows('air_kerma_behind_uncollided')];
+  return (paths: number): { mean: number; stdError: number } => {
+    const bins = [paths * PER_PATH - 1, paths * PER_PATH];
+    const sum = (values: (number | null)[]) => bins.reduce((total, bin) => total + (values[bin] ?? 0), 0);
+    const divisor = sum(uncollided.map(({ mean }) => mean));
+    return {
+      mean: sum(whole.map(({ mean }) => mean)) / divisor,
+      stdError: sum(whole.map(({ stdError }) => stdError)) / divisor,
+    };
+  };
+}
 
 /** Buildup by mean free paths, from the rows of one source: a cubic spline of ln B, 1 at 0. */
 export function publishedBuildup(

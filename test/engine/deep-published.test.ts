@@ -2,50 +2,20 @@
 import { describe, expect, it } from 'vitest';
 import { findNuclide, nuclideLines, resolveMaterial } from '../../materials/index.js';
 import { attenuationPerCm } from '../../engine/deep/grid.js';
-import { compile } from '../../engine/compile.js';
 import type { Setup } from '../../engine/setup.js';
 import { publishedRows } from '../published/csv.js';
-import { planeBuildup, publishedBuildup } from './buildup.js';
-import { deepSetup, figureIn, playDeep, type DeepCase } from './deep-run.js';
-import { ALL } from './slab-run.js';
+import { planeBuildup, playBuildup, publishedBuildup } from './buildup.js';
+import { figureIn, playDeep, type DeepCase } from './deep-run.js';
 
 describe('exposure buildup of a plane isotropic source deep in matter', () => {
-  // The published factors leave coherent scattering, binding and, here, bremsstrahlung out.
-  const physics = { ...ALL, coherent: false, boundIncoherent: false, doppler: false, bremsstrahlung: false };
-  const BACKING = 8;
-  const DEPTH = 15;
-  const PER_PATH = 5;
-
   it.each(['water', 'concrete', 'iron', 'lead'])(
     'in %s at 1 MeV is that of ANSI/ANS-6.4.3 within 4 per cent, from 1 to 10 mean free paths',
     (medium) => {
-      const energyKeV = 1000;
       const seed = `buildup ${medium}`;
-      const probe = compile(deepSetup({ stack: [[medium, 1]], energyKeV, physics, seed }, 1, 'analog'));
-      const pathCm = 1 / attenuationPerCm(probe, 0, energyKeV);
-      const given: DeepCase = {
-        stack: [
-          [medium, BACKING * pathCm],
-          [medium, 1e-3 * pathCm],
-          [medium, DEPTH * pathCm],
-        ],
-        energyKeV,
-        physics,
-        shape: { kind: 'embedded', layer: 'l1' },
-        depth: { layer: 'l2', bins: DEPTH * PER_PATH },
-        seed,
-      };
-      const { depth } = playDeep(given, 60_000);
-      const slice = (quantity: string, bin: number) =>
-        depth.filter((row) => row.quantity === quantity).map((row) => [row.mean!, row.stdError ?? 0])[bin];
+      const buildupAt = playBuildup({ medium, energyKeV: 1000, depth: 15, seed, histories: 60_000 });
       const published = publishedBuildup('ANSI/ANS-6.4.3', medium, 1);
       for (const paths of [1, 2, 4, 7, 10]) {
-        const bins = [paths * PER_PATH - 1, paths * PER_PATH];
-        const sum = (quantity: string, part: number) =>
-          bins.reduce((total, bin) => total + slice(quantity, bin)[part], 0);
-        const uncollided = sum('air_kerma_behind_uncollided', 0);
-        const buildup = sum('air_kerma', 0) / uncollided;
-        const stdError = sum('air_kerma', 1) / uncollided;
+        const { mean: buildup, stdError } = buildupAt(paths);
         const expected = planeBuildup(published, paths);
         // Values from memory, good to two or three digits; 4 standard errors come on top (false alarm 6e-5 each).
         expect(

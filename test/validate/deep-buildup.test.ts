@@ -1,47 +1,14 @@
 /** Exposure buildup of a plane isotropic source against published factors of point sources, folded into the plane. */
 import { describe, expect, it } from 'vitest';
-import { attenuationPerCm } from '../../engine/deep/grid.js';
-import { compile } from '../../engine/compile.js';
-import { planeBuildup, publishedBuildup } from '../engine/buildup.js';
-import { deepSetup, playDeep, type DeepCase } from '../engine/deep-run.js';
-import { ALL } from '../engine/slab-run.js';
+import { planeBuildup, playBuildup, publishedBuildup } from '../engine/buildup.js';
 
-/** As the published factors: neither coherent scattering nor binding nor bremsstrahlung. */
-const PHYSICS = { ...ALL, coherent: false, boundIncoherent: false, doppler: false, bremsstrahlung: false };
-const [BACKING, DEPTH, PER_PATH] = [8, 23, 5];
 const DEPTHS = [1, 2, 4, 7, 10, 15];
 
 /** Buildup at each depth, with its standard error. */
 function buildupOf(medium: string, energyMeV: number, histories: number) {
-  const energyKeV = 1000 * energyMeV;
   const seed = `buildup ${medium} ${energyMeV}`;
-  const probe = compile(deepSetup({ stack: [[medium, 1]], energyKeV, physics: PHYSICS, seed }, 1, 'analog'));
-  const pathCm = 1 / attenuationPerCm(probe, 0, energyKeV);
-  const given: DeepCase = {
-    stack: [
-      [medium, BACKING * pathCm],
-      [medium, 1e-3 * pathCm],
-      [medium, DEPTH * pathCm],
-    ],
-    energyKeV,
-    physics: PHYSICS,
-    shape: { kind: 'embedded', layer: 'l1' },
-    depth: { layer: 'l2', bins: DEPTH * PER_PATH },
-    seed,
-  };
-  const { depth } = playDeep(given, histories);
-  const rows = (quantity: string) => depth.filter((row) => row.quantity === quantity);
-  const [whole, uncollided] = [rows('air_kerma'), rows('air_kerma_behind_uncollided')];
-  return DEPTHS.map((paths) => {
-    const bins = [paths * PER_PATH - 1, paths * PER_PATH];
-    const sum = (values: (number | null)[]) => bins.reduce((total, bin) => total + (values[bin] ?? 0), 0);
-    const divisor = sum(uncollided.map(({ mean }) => mean));
-    return {
-      paths,
-      mean: sum(whole.map(({ mean }) => mean)) / divisor,
-      stdError: sum(whole.map(({ stdError }) => stdError)) / divisor,
-    };
-  });
+  const buildupAt = playBuildup({ medium, energyKeV: 1000 * energyMeV, depth: 23, seed, histories });
+  return DEPTHS.map((paths) => ({ paths, ...buildupAt(paths) }));
 }
 
 // Values from memory. The second table is of 1954: cross sections of its day, neither annihilation quanta nor X rays;
