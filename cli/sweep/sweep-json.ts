@@ -1,4 +1,5 @@
 /** A sweep as the one object that `--json` prints. */
+import { CAUTION } from '../text/caution.js';
 import { pointsOf, figureNames, finalStatus } from './points-table.js';
 import { sweepFacts } from './sweep-manifest.js';
 import type { SweepView } from './sweep-text.js';
@@ -35,6 +36,7 @@ export function sweepObject(
         figures: Object.fromEntries(figures) as Record<string, unknown>,
       };
     }),
+    caution: CAUTION,
   };
 }
 

@@ -180,6 +180,7 @@ test('the summary of a sweep shows its points, and --json has all of their figur
       { name: 'stack.shield.thickness', unit: 'cm' },
       { name: 'source.energy', unit: 'keV' },
     ],
+    caution: expect.stringContaining('no qualified expert') as string,
   });
   expect(object.table).toHaveLength(18);
   const { mean, std_error: error, unit } = object.table[3].figures['deposited_energy.shield'];
